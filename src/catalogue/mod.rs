@@ -1,0 +1,5 @@
+//! Owns the catalogue: the parts of a firm, read from its CSV files.
+
+mod parts;
+
+pub use parts::*;

@@ -1,0 +1,7 @@
+//! binrail: from rail requirements to a proven bill of materials for a mains-fed linear supply.
+#![cfg_attr(test, allow(clippy::unwrap_used))]
+
+pub mod catalogue;
+pub mod fault;
+pub mod supply;
+pub mod units;

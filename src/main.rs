@@ -1,0 +1,2 @@
+//! The program: all of it lives in the library.
+fn main() {}

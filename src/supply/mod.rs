@@ -1,0 +1,5 @@
+//! Owns the supply file: what is to be built.
+
+mod types;
+
+pub use types::*;

@@ -1,0 +1,5 @@
+//! Owns numbers with units: money, and quantities as people write them.
+
+mod money;
+
+pub use money::Money;
