@@ -3,5 +3,6 @@
 
 pub mod catalogue;
 pub mod fault;
+pub mod physics;
 pub mod supply;
 pub mod units;
