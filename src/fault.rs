@@ -33,7 +33,8 @@ impl fmt::Display for Fault {
         if let Some(part) = &self.part {
             write!(f, "part {part}: ")?;
         }
-        if let Some(column) = &self.column {
+        // An unknown column is its own bad text: once is enough.
+        if let Some(column) = self.column.as_ref().filter(|c| **c != self.text) {
             write!(f, "{column}: ")?;
         }
         if !self.text.is_empty() {

@@ -275,6 +275,29 @@ pub enum DeviceKind {
     Shunt,
 }
 
+impl DeviceKind {
+    /// All kinds.
+    pub const ALL: [DeviceKind; 5] = [
+        DeviceKind::Fixed,
+        DeviceKind::Adjustable,
+        DeviceKind::Follower,
+        DeviceKind::Darlington,
+        DeviceKind::Shunt,
+    ];
+
+    /// The word for it in files and reports.
+    #[must_use]
+    pub const fn word(self) -> &'static str {
+        match self {
+            DeviceKind::Fixed => "fixed",
+            DeviceKind::Adjustable => "adjustable",
+            DeviceKind::Follower => "follower",
+            DeviceKind::Darlington => "darlington",
+            DeviceKind::Shunt => "shunt",
+        }
+    }
+}
+
 /// Sign of the rail that a device serves with its output not grounded.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
 pub enum Polarity {

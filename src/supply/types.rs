@@ -21,7 +21,7 @@ impl Path {
 
     /// The word for it in files and reports.
     #[must_use]
-    pub fn word(self) -> &'static str {
+    pub const fn word(self) -> &'static str {
         match self {
             Path::HalfWave => "half-wave",
             Path::CentreTap => "centre-tap",

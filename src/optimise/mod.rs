@@ -1,0 +1,147 @@
+//! Owns the optimum: the feasible builds with the least keys, and the proof that there is none below.
+//!
+//! Invariant: knows columns, pieces, integers; no volts. Every build that leaves here has passed the full audit.
+
+mod best;
+mod milp;
+mod search;
+
+pub use best::{Found, Key};
+pub use milp::{Answer, Solver, least};
+pub use search::{NODE_BUDGET, columns_of};
+
+use std::collections::BTreeSet;
+
+use crate::audit::{Site, audit};
+use crate::build::Build;
+use crate::catalogue::{Catalogue, PartId};
+use crate::screen::{Counts, Must, Objective, Stop};
+use crate::supply::Supply;
+use best::Best;
+use search::{End, Search};
+
+/// What is asked of the optimizer.
+#[derive(Debug, Clone)]
+pub struct Question<'c> {
+    /// The requirement.
+    pub supply: &'c Supply,
+    /// The parts.
+    pub catalogue: &'c Catalogue,
+    /// What is to be least.
+    pub objective: Objective,
+    /// How many builds, best first.
+    pub top: usize,
+    /// Parts that may not be used.
+    pub without: BTreeSet<PartId>,
+    /// Parts of which the build must hold at least one piece, anywhere or (`Some`) in that rail.
+    pub with: Vec<(PartId, Option<usize>)>,
+    /// When to give up.
+    pub stop: Stop,
+}
+
+/// How far the proof came.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Proof {
+    /// No feasible build is missing from the list or has a lower key than its last.
+    Proved,
+    /// Stopped before: no feasible build has an objective below this (millionths of the currency, or microwatts).
+    Open {
+        /// Lower bound of the objective.
+        bound: i64,
+    },
+}
+
+/// What came of it.
+#[derive(Debug, Clone)]
+pub struct Outcome<'c> {
+    /// Best first; empty and proved: nothing passes.
+    pub builds: Vec<Found<'c>>,
+    /// How far the proof came.
+    pub proof: Proof,
+    /// Work done.
+    pub counts: Counts,
+}
+
+/// The search and the audit disagree: a bug.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Disagreement {
+    /// The build, written out.
+    pub build: String,
+    /// What the audit says against it.
+    pub verdict: Vec<String>,
+}
+
+/// Finds the builds with the least keys.
+///
+/// # Errors
+/// When the audit rejects a build that the search found: a bug to report.
+pub fn optimise<'c>(question: &Question<'c>) -> Result<Outcome<'c>, Disagreement> {
+    let site = Site::new(question.supply);
+    let mut best = Best::new(question.supply, question.objective, question.top);
+    let mut counts = Counts::default();
+    let mut open: Option<i64> = None;
+    for in_rail in placements(question) {
+        let must = Must {
+            without: question.without.clone(),
+            named: question.with.iter().map(|&(part, _)| part).collect(),
+            in_rail,
+        };
+        let search = Search::new(&site, question, &must, &mut counts);
+        if let End::Stopped { bound } = search.run(&mut best, &mut counts) {
+            open = Some(open.map_or(bound, |so_far| so_far.min(bound)));
+        }
+    }
+    let builds = best.into_builds();
+    for found in &builds {
+        judge(question.supply, &found.build)?;
+    }
+    let proof = match open {
+        None => Proof::Proved,
+        Some(bound) => {
+            let value = builds
+                .first()
+                .map_or(i64::MAX, |found| found.key.objective(question.objective));
+            Proof::Open {
+                bound: bound.min(value),
+            }
+        }
+    };
+    Ok(Outcome { builds, proof, counts })
+}
+
+/// The full audit of a build that is about to leave.
+fn judge(supply: &Supply, build: &Build) -> Result<(), Disagreement> {
+    let verdict = audit(supply, build);
+    if verdict.passes() && verdict.heat_w.is_some() {
+        return Ok(());
+    }
+    let failing = verdict.margins.iter().filter(|m| !m.check.met());
+    Err(Disagreement {
+        build: build.text().replace('\0', " "),
+        verdict: failing
+            .map(|m| format!("{} {}: {:?}", m.of, m.check.limit.word(), m.check))
+            .collect(),
+    })
+}
+
+/// Every way to place the demanded parts on rails: "somewhere" means in this rail or in that one.
+fn placements(question: &Question) -> Vec<Vec<BTreeSet<PartId>>> {
+    let rails = question.supply.rails.len();
+    let mut ways = vec![vec![BTreeSet::new(); rails]];
+    for &(part, at) in &question.with {
+        let rails: Vec<usize> = at.map_or_else(|| (0..rails).collect(), |rail| vec![rail]);
+        ways = ways
+            .iter()
+            .flat_map(|way| {
+                rails.iter().map(|&rail| {
+                    let mut way = way.clone();
+                    way[rail].insert(part);
+                    way
+                })
+            })
+            .collect();
+    }
+    ways.sort();
+    ways.dedup();
+    ways
+}

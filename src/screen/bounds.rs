@@ -1,0 +1,51 @@
+//! Owns closed-form bounds on the raw section: what no reservoir can mend, and the least capacitance that might do.
+//!
+//! Both follow from folding the bank's series resistance into the source: for a constant load the voltage behind it
+//! (its value at rest) obeys the same circuit with R + ESR and no ESR, and meets the true raw voltage where conduction
+//! starts. Conduction starts at the valley or before it, so the valley is at most the source's voltage there.
+
+use std::f64::consts::PI;
+
+use crate::physics::raw_section::RawSection;
+
+/// Rounding slack on bounds: they may let through what fails, never the reverse.
+const SLACK: f64 = 1e-9;
+
+/// Whether the source can deliver the load at all while the raw voltage stays at `level_v` or above.
+///
+/// Bound: with v >= level, i <= (v_s - drop - level)+/R at every instant, so its mean must reach the load:
+/// (2 or 1 pulses)/(2 pi R) (V (2 cos t) - (drop + level)(pi - 2 t)) >= I_L with sin t = (drop + level)/V.
+/// Holds for any capacitance and ESR.
+pub(super) fn source_reaches(section: &RawSection, level_v: f64) -> bool {
+    let crest = section.source_rms_v * std::f64::consts::SQRT_2;
+    let floor = (section.drop_v + level_v) / crest;
+    if floor >= 1.0 {
+        return false;
+    }
+    if section.series_ohm <= 0.0 || floor <= 0.0 {
+        return true;
+    }
+    let start = floor.asin();
+    let pulses = if section.full_wave { 2.0 } else { 1.0 };
+    let area = crest * (2.0 * start.cos() - floor * (PI - 2.0 * start));
+    pulses * area / (2.0 * PI * section.series_ohm) >= section.load_a * (1.0 - SLACK)
+}
+
+/// Least capacitance with which the valley can reach `level_v`, and still `held_v` after the load has drawn on the bank
+/// for `held_s` more seconds.
+///
+/// Bound: conduction lies between the two instants at which the source passes the level, so the load alone discharges
+/// the bank for the rest of the period, from at most the crest less the drop:
+/// I_L t_off / C <= V - drop - level, and I_L (t_off + held) / C <= V - drop - held level.
+pub(super) fn least_bank_f(section: &RawSection, level_v: f64, held_v: f64, held_s: f64) -> f64 {
+    let crest = section.source_rms_v * std::f64::consts::SQRT_2;
+    let per_second = 2.0 * PI * section.mains_hz;
+    let off_s = |level: f64| {
+        let start = ((section.drop_v + level) / crest).clamp(0.0, 1.0).asin();
+        let period = if section.full_wave { PI } else { 2.0 * PI };
+        (period - PI + 2.0 * start) / per_second
+    };
+    let need =
+        |level: f64, seconds: f64| section.load_a * seconds / (crest - section.drop_v - level).max(f64::MIN_POSITIVE);
+    need(level_v, off_s(level_v)).max(need(held_v, off_s(held_v) + held_s)) * (1.0 - SLACK)
+}
