@@ -49,7 +49,7 @@ impl SectionHeat {
     pub fn new(site: &Site, raw: &Raw, load_a: Known<f64>, high: Known<&Waveform>) -> Known<SectionHeat> {
         let ohm = site.winding_ohm(raw.transformer, raw.hookup, Corner::High, load_a?, &[]);
         Ok(SectionHeat {
-            winding_w: ohm * high?.source_rms_a.powi(2),
+            winding_w: ohm * high?.source_rms_a().powi(2),
             rectifier_w: rectifier::loss_w(site, raw, high)?,
             reservoir_w: reservoir::loss_w(site, raw, high)?,
         })

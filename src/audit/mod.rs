@@ -139,9 +139,10 @@ pub fn audit(supply: &Supply, build: &Build) -> Audit {
             .filter(|(s, _)| s.transformer == place)
         {
             let raw = raw_of(build, section);
-            va = va
-                .zip(*waves)
-                .map(|(sum, waves)| Ok(sum? + transformer::section_va(&raw, &waves.high?)));
+            va = va.zip(*waves).map(|(sum, waves)| {
+                let rms_a = waves.high?.source_rms_a();
+                Ok(sum? + transformer::section_va(raw.hookup, raw.path, rms_a))
+            });
         }
         if let Some(va) = va {
             to(transformer::load(instance.part, va));
@@ -179,7 +180,14 @@ pub fn audit(supply: &Supply, build: &Build) -> Audit {
         };
         let high = by_ref(&waves.high);
         let idle_v = site.idle_v(raw.transformer, raw.hookup);
-        transformer::winding(&raw, load_a, high, &mut to);
+        to(transformer::current(
+            raw.hookup,
+            raw.path,
+            high.map(Waveform::source_rms_a),
+        ));
+        transformer::bias(raw.transformer, raw.hookup, raw.path, load_a)
+            .into_iter()
+            .for_each(&mut to);
         to(rectifier::reverse_voltage(&site, raw.rectifier, raw.path, idle_v));
         to(rectifier::current(&raw, high));
         to(rectifier::surge(&site, &raw));
@@ -191,7 +199,9 @@ pub fn audit(supply: &Supply, build: &Build) -> Audit {
             section.rectifier_sink,
         ));
         to(reservoir::voltage(&site, raw.reservoir, idle_v));
-        reservoir::wear(&site, &raw, high).into_iter().for_each(&mut to);
+        reservoir::wear(&site, raw.reservoir, raw.path, reservoir::ripple_a(&raw, high))
+            .into_iter()
+            .for_each(&mut to);
         let loss = SectionHeat::new(&site, &raw, load_a, high);
         heat_sum = heat_sum.and_then(|mut sum| {
             sum.push(loss?.sum_w());

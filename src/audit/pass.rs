@@ -98,7 +98,7 @@ impl<'c> Stage<'c> {
         Check::new(
             Limit::Headroom,
             Corner::Low,
-            low.map(|w| w.valley_v),
+            low.map(|w| w.valley_v()),
             self.valley_wanted_v(site),
         )
     }
@@ -111,7 +111,7 @@ impl<'c> Stage<'c> {
         let crests_hz = site.supply.mains.frequency_hz * if raw.path == Path::HalfWave { 1.0 } else { 2.0 };
         let intervals = whole_intervals(dip_s * crests_hz);
         let bank_f = site.can_f(raw.reservoir, Corner::Low) * f64::from(raw.cans);
-        let left = low.and_then(|wave| Ok(wave.valley_v - load_a? * (intervals / crests_hz) / bank_f));
+        let left = low.and_then(|wave| Ok(wave.valley_v() - load_a? * (intervals / crests_hz) / bank_f));
         Some(Check::new(Limit::RideThrough, Corner::Low, left, self.floor_v))
     }
 
@@ -121,7 +121,7 @@ impl<'c> Stage<'c> {
     /// Names the column that is blank.
     pub fn loss_w(&self, wave: Known<&Waveform>) -> Known<f64> {
         let ground_a = self.device.ground_a.ok_or("ground_ma")?;
-        Ok(dissipation_w(wave?.mean_v, self.out_v, self.rail.current_a, ground_a))
+        Ok(dissipation_w(wave?.mean_v(), self.out_v, self.rail.current_a, ground_a))
     }
 
     /// Junction with that dissipation, free-standing or on a sink.
@@ -142,12 +142,13 @@ impl<'c> Stage<'c> {
         let asked_v = self.rail.ripple_v?;
         let worst = || -> Known<(f64, Corner)> {
             let db = self.rejection_db(low?)?;
-            let at = [(low?, Corner::Low), (high?, Corner::High), (worn?, Corner::Worn)];
-            let (wave, corner) = at
-                .into_iter()
-                .reduce(|a, b| if b.0.ripple_v() > a.0.ripple_v() { b } else { a })
-                .unwrap_or((low?, Corner::Low));
-            Ok((output_ripple_v(wave.ripple_v(), db), corner))
+            let at = [
+                (low?.ripple_v(), Corner::Low),
+                (high?.ripple_v(), Corner::High),
+                (worn?.ripple_v(), Corner::Worn),
+            ];
+            let (raw_v, corner) = at.into_iter().fold(at[0], |a, b| if b.0 > a.0 { b } else { a });
+            Ok((output_ripple_v(raw_v, db), corner))
         };
         let worst = worst();
         let corner = worst.map_or(Corner::Low, |(_, corner)| corner);
@@ -169,7 +170,7 @@ impl<'c> Stage<'c> {
         Ok(rejection_db(
             stated_db,
             self.out_v / stated_at_v,
-            low.valley_v - self.floor_v?,
+            low.valley_v() - self.floor_v?,
         ))
     }
 
@@ -178,7 +179,7 @@ impl<'c> Stage<'c> {
     pub fn accuracy(&self, low: Known<&Waveform>, high: Known<&Waveform>) -> Option<Check> {
         let asked = self.rail.accuracy?;
         let error = || -> Known<f64> {
-            let swing_v = high?.mean_v - low?.mean_v;
+            let swing_v = high?.mean_v() - low?.mean_v();
             Ok(tolerance(self.device, self.out_v)? + self.device.load_reg + self.device.line_reg_per_v * swing_v)
         };
         Some(Check::new(Limit::OutputAccuracy, None, error(), Ok(asked)))

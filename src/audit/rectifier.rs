@@ -43,7 +43,7 @@ pub fn current(raw: &Raw, high: Known<&Waveform>) -> Check {
     Check::new(
         Limit::RectifierCurrent,
         Corner::High,
-        high.map(|w| share * w.source_mean_a),
+        high.map(|w| share * w.source_mean_a()),
         bound,
     )
 }
@@ -73,7 +73,7 @@ pub fn surge(site: &Site, raw: &Raw) -> Check {
 pub fn loss_w(site: &Site, raw: &Raw, high: Known<&Waveform>) -> Known<f64> {
     let (threshold_v, slope_ohm) = site.forward(raw.rectifier, Corner::High)?;
     let wave = high?;
-    Ok(diodes_in_path(raw.path) * diode::loss_w(threshold_v, slope_ohm, wave.source_mean_a, wave.source_rms_a))
+    Ok(diodes_in_path(raw.path) * diode::loss_w(threshold_v, slope_ohm, wave.source_mean_a(), wave.source_rms_a()))
 }
 
 /// Loss of one package: all of a module's, a single diode's own share.

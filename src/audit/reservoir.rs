@@ -18,18 +18,24 @@ pub fn voltage(site: &Site, can: &Reservoir, idle_v: f64) -> Check {
     Check::new(Limit::ReservoirVoltage, Corner::Idle, Ok(idle_v), bound)
 }
 
-/// Ripple current, hottest spot and life of a can.
+/// Rms current per can.
+///
+/// # Errors
+/// Names the column that is blank.
+pub fn ripple_a(raw: &Raw, high: Known<&Waveform>) -> Known<f64> {
+    Ok(high?.reservoir_rms_a() / f64::from(raw.cans))
+}
+
+/// Ripple current, hottest spot and life of a can that carries so much; all three are kindest without any.
 #[must_use]
-pub fn wear(site: &Site, raw: &Raw, high: Known<&Waveform>) -> [Check; 3] {
-    let can = raw.reservoir;
+pub fn wear(site: &Site, can: &Reservoir, path: Path, ripple_a: Known<f64>) -> [Check; 3] {
     let rating_a = site.can_ripple_a(can).map(|a| {
-        if raw.path == Path::HalfWave {
+        if path == Path::HalfWave {
             HALF_WAVE_RIPPLE * a
         } else {
             a
         }
     });
-    let ripple_a = high.map(|wave| wave.reservoir_rms_a / f64::from(raw.cans));
     let hot = ripple_a.and_then(|a| Ok(hot_c(site.t_hi_c, a, rating_a?)));
     let t_max = can.t_max_c.ok_or("t_max_c");
     let life = hot.and_then(|c| Ok(life_h(can.life_h.ok_or("life_h")?, t_max?, c)));
@@ -51,5 +57,5 @@ pub fn wear(site: &Site, raw: &Raw, high: Known<&Waveform>) -> [Check; 3] {
 /// Names the column that is blank.
 pub fn loss_w(site: &Site, raw: &Raw, high: Known<&Waveform>) -> Known<f64> {
     let esr_ohm = site.can_esr_ohm(raw.reservoir, Corner::High)? / f64::from(raw.cans);
-    Ok(esr_ohm * high?.reservoir_rms_a.powi(2))
+    Ok(esr_ohm * high?.reservoir_rms_a().powi(2))
 }

@@ -3,11 +3,10 @@
 use std::f64::consts::SQRT_2;
 
 use super::check::{Check, Corner, Known, Limit};
-use super::site::{Raw, Site};
-use crate::build::HookupKind;
+use super::site::Site;
+use crate::build::{Hookup, HookupKind};
 use crate::catalogue::{Core, Transformer};
 use crate::physics::constants::{CORE_BIAS_SHARE, FLUX_RESERVE, FREQUENCY_LEAST, OVERVOLTAGE_MOST};
-use crate::physics::raw_section::Waveform;
 use crate::supply::Path;
 
 /// What a transformer must hold whatever it feeds.
@@ -34,22 +33,18 @@ pub fn by_itself(site: &Site, transformer: &Transformer) -> [Check; 3] {
 
 /// Rms current in the hook-up's windings (in one half for centre-tap).
 #[must_use]
-pub fn winding_rms_a(path: Path, wave: &Waveform) -> f64 {
+pub fn winding_rms_a(path: Path, source_rms_a: f64) -> f64 {
     match path {
-        Path::CentreTap => wave.source_rms_a / SQRT_2,
-        Path::HalfWave | Path::Bridge | Path::Dual => wave.source_rms_a,
+        Path::CentreTap => source_rms_a / SQRT_2,
+        Path::HalfWave | Path::Bridge | Path::Dual => source_rms_a,
     }
 }
 
 /// Apparent power of a hook-up, to be summed over the transformer.
 #[must_use]
-pub fn section_va(raw: &Raw, high: &Waveform) -> f64 {
-    let halves = if raw.hookup.kind == HookupKind::CentreTap {
-        2.0
-    } else {
-        1.0
-    };
-    halves * raw.hookup.volts_v * winding_rms_a(raw.path, high)
+pub fn section_va(hookup: &Hookup, path: Path, source_rms_a: f64) -> f64 {
+    let halves = if hookup.kind == HookupKind::CentreTap { 2.0 } else { 1.0 };
+    halves * hookup.volts_v * winding_rms_a(path, source_rms_a)
 }
 
 /// The sum of [`section_va`] against the rating.
@@ -58,20 +53,19 @@ pub fn load(transformer: &Transformer, va: Known<f64>) -> Check {
     Check::new(Limit::TransformerLoad, Corner::High, va, Ok(transformer.va))
 }
 
-/// Winding current, and the core's bias on a half-wave path.
-pub fn winding(raw: &Raw, load_a: Known<f64>, high: Known<&Waveform>, mut to: impl FnMut(Check)) {
-    let rms_a = high.map(|wave| winding_rms_a(raw.path, wave));
-    to(Check::new(
-        Limit::WindingCurrent,
-        Corner::High,
-        rms_a,
-        Ok(raw.hookup.amps_a),
-    ));
-    if raw.path == Path::HalfWave {
-        let bound = raw.transformer.core.ok_or("core").map(|core| match core {
-            Core::Laminated => CORE_BIAS_SHARE * raw.hookup.amps_a,
-            Core::Toroid => 0.0,
-        });
-        to(Check::new(Limit::CoreBias, Corner::High, load_a, bound));
-    }
+/// Winding current; `source_rms_a` is that of the high corner.
+#[must_use]
+pub fn current(hookup: &Hookup, path: Path, source_rms_a: Known<f64>) -> Check {
+    let rms_a = source_rms_a.map(|a| winding_rms_a(path, a));
+    Check::new(Limit::WindingCurrent, Corner::High, rms_a, Ok(hookup.amps_a))
+}
+
+/// The core's bias, on a half-wave path only.
+#[must_use]
+pub fn bias(transformer: &Transformer, hookup: &Hookup, path: Path, load_a: Known<f64>) -> Option<Check> {
+    let bound = transformer.core.ok_or("core").map(|core| match core {
+        Core::Laminated => CORE_BIAS_SHARE * hookup.amps_a,
+        Core::Toroid => 0.0,
+    });
+    (path == Path::HalfWave).then(|| Check::new(Limit::CoreBias, Corner::High, load_a, bound))
 }

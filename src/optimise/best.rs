@@ -6,7 +6,6 @@ use std::collections::BTreeMap;
 use crate::build::Build;
 use crate::catalogue::PartId;
 use crate::screen::Objective;
-use crate::supply::Supply;
 
 /// What builds are ordered by: objective first, then the other, then the choice written out.
 #[derive(Debug, Clone, PartialEq, Eq)]
@@ -50,8 +49,7 @@ pub(super) type Bill = Vec<(PartId, u64)>;
 
 /// The N best so far.
 pub(super) struct Best<'c> {
-    pub(super) supply: &'c Supply,
-    pub(super) objective: Objective,
+    objective: Objective,
     most: usize,
     by_bill: BTreeMap<Bill, Found<'c>>,
     /// First two parts of the N-th key once there are N.
@@ -59,9 +57,8 @@ pub(super) struct Best<'c> {
 }
 
 impl<'c> Best<'c> {
-    pub(super) fn new(supply: &'c Supply, objective: Objective, most: usize) -> Best<'c> {
+    pub(super) fn new(objective: Objective, most: usize) -> Best<'c> {
         Best {
-            supply,
             objective,
             most: most.max(1),
             by_bill: BTreeMap::new(),

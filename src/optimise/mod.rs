@@ -3,12 +3,15 @@
 //! Invariant: knows columns, pieces, integers; no volts. Every build that leaves here has passed the full audit.
 
 mod best;
+mod columns;
+mod combine;
 mod milp;
 mod search;
+mod tighten;
 
 pub use best::{Found, Key};
+pub use columns::columns_of;
 pub use milp::{Answer, Solver, least};
-pub use search::{NODE_BUDGET, columns_of};
 
 use std::collections::BTreeSet;
 
@@ -18,7 +21,7 @@ use crate::catalogue::{Catalogue, PartId};
 use crate::screen::{Counts, Must, Objective, Stop};
 use crate::supply::Supply;
 use best::Best;
-use search::{End, Search};
+use search::{End, search};
 
 /// What is asked of the optimizer.
 #[derive(Debug, Clone)]
@@ -77,7 +80,7 @@ pub struct Disagreement {
 /// When the audit rejects a build that the search found: a bug to report.
 pub fn optimise<'c>(question: &Question<'c>) -> Result<Outcome<'c>, Disagreement> {
     let site = Site::new(question.supply);
-    let mut best = Best::new(question.supply, question.objective, question.top);
+    let mut best = Best::new(question.objective, question.top);
     let mut counts = Counts::default();
     let mut open: Option<i64> = None;
     for in_rail in placements(question) {
@@ -86,8 +89,7 @@ pub fn optimise<'c>(question: &Question<'c>) -> Result<Outcome<'c>, Disagreement
             named: question.with.iter().map(|&(part, _)| part).collect(),
             in_rail,
         };
-        let search = Search::new(&site, question, &must, &mut counts);
-        if let End::Stopped { bound } = search.run(&mut best, &mut counts) {
+        if let End::Stopped { bound } = search(&site, question, &must, &mut best, &mut counts) {
             open = Some(open.map_or(bound, |so_far| so_far.min(bound)));
         }
     }

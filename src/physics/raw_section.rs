@@ -38,36 +38,20 @@ pub struct RawSection {
     pub load_s: f64,
 }
 
-/// What the steady state looks like. Currents of the source are those of the rectified pulses.
-#[derive(Debug, Clone, Copy, PartialEq)]
+/// The steady state: its figures are worked out when asked for. Source currents are those of the rectified pulses.
+#[derive(Debug, Clone, Copy)]
 pub struct Waveform {
-    /// Lowest raw voltage.
-    pub valley_v: f64,
-    /// Highest raw voltage.
-    pub peak_v: f64,
-    /// Mean raw voltage.
-    pub mean_v: f64,
-    /// Mean rectified source current.
-    pub source_mean_a: f64,
-    /// Its rms.
-    pub source_rms_a: f64,
-    /// Its crest.
-    pub source_peak_a: f64,
-    /// Rms current in the bank.
-    pub reservoir_rms_a: f64,
-    /// Length of one pulse in radians of the mains period.
-    pub conduction_rad: f64,
+    section: RawSection,
+    /// Radians of a period of the raw voltage.
+    period: f64,
+    reactance: f64,
+    off_decay: f64,
+    pulse: Option<Pulse>,
+    integrals: Integrals,
 }
 
-impl Waveform {
-    /// Peak-to-peak ripple of the raw voltage.
-    #[must_use]
-    pub fn ripple_v(&self) -> f64 {
-        self.peak_v - self.valley_v
-    }
-}
-
-/// A pulse of conduction: where it starts, what the voltages and currents do in it.
+/// A pulse of conduction: what the voltages and currents do in it.
+#[derive(Debug, Clone, Copy)]
 struct Pulse {
     /// Radians of conduction.
     length: f64,
@@ -99,8 +83,8 @@ struct Pulse {
 ///     bank_f: 20.0 / (std::f64::consts::TAU * hz), bank_esr_ohm: 0.0, load_a: 0.0, load_s: 1.0,
 /// };
 /// let wave = steady_state(&section).expect("does not collapse");
-/// assert!((wave.mean_v - 0.8281).abs() < 5e-5);
-/// assert!((wave.source_rms_a / wave.mean_v - 1.788).abs() < 5e-4);
+/// assert!((wave.mean_v() - 0.8281).abs() < 5e-5);
+/// assert!((wave.source_rms_a() / wave.mean_v() - 1.788).abs() < 5e-4);
 /// ```
 #[must_use]
 pub fn steady_state(section: &RawSection) -> Option<Waveform> {
@@ -154,34 +138,81 @@ impl<'a> Solver<'a> {
             return None;
         }
         if s.load_a + s.load_s * open <= 0.0 {
-            return Some(Waveform {
-                valley_v: open,
-                peak_v: open,
-                mean_v: open,
-                source_mean_a: 0.0,
-                source_rms_a: 0.0,
-                source_peak_a: 0.0,
-                reservoir_rms_a: 0.0,
-                conduction_rad: 0.0,
-            });
+            return Some(self.waveform(None));
         }
         // Conduction starts where the rising source meets a raw voltage >= 0, and before the crest: a start behind it
         // could not bring back the charge that a period takes.
         let first = (s.drop_v / self.crest).asin();
-        if self.surplus(first).0 < 0.0 {
-            return None;
-        }
-        let start = falling(first, FRAC_PI_2, self.guess(first), |angle| self.surplus(angle));
-        let wave = self.figures(start);
-        (wave.valley_v >= 0.0).then_some(wave)
+        let guess = self.guess(first);
+        let pulse = match self.both_angles(first, guess) {
+            Some(pulse) => pulse,
+            None if self.surplus(first).0 < 0.0 => return None,
+            None => self.pulse(falling(first, FRAC_PI_2, guess, 0.0, |angle| self.surplus(angle)))?,
+        };
+        let wave = self.waveform(Some(pulse));
+        (wave.valley_v() >= 0.0).then_some(wave)
     }
 
-    /// Start angle if the bank were discharged for the whole period by the load at the crest: close, and cheap.
+    fn waveform(&self, pulse: Option<Pulse>) -> Waveform {
+        Waveform {
+            section: *self.section,
+            period: self.period,
+            reactance: self.reactance,
+            off_decay: self.off_decay,
+            pulse,
+            integrals: pulse.map_or(Integrals::new(0.0, 0.0), |p| Integrals::new(p.length, p.decay)),
+        }
+    }
+
+    /// Start angle from two rules of thumb: narrow pulses of a stiff voltage, and a bank that the load discharges.
     fn guess(&self, first: f64) -> f64 {
         let s = self.section;
         let load = s.load_a + s.load_s * (self.crest - s.drop_v);
-        let level = 1.0 - load * (self.reactance * 0.75 * self.period + 2.0 * self.loop_ohm) / self.crest;
-        level.clamp(-1.0, 1.0).asin().clamp(first, FRAC_PI_2)
+        let half_pulse = (1.5 * self.period * self.loop_ohm * load / self.crest).cbrt().min(1.4);
+        let discharge = 0.75 * load * self.reactance * (self.period - half_pulse) / self.crest;
+        (half_pulse.cos() - discharge)
+            .clamp(-1.0, 1.0)
+            .asin()
+            .clamp(first, FRAC_PI_2)
+    }
+
+    /// Newton's steps on start and end of the pulse at once; `None` where they leave their range or do not settle (the
+    /// bracketed root then decides, also whether the section collapses).
+    ///
+    /// The end hardly moves the balance (there the current is zero, so charging and mere discharge agree), so the start
+    /// has a step of its own; how the end follows it is known from how fast trajectories close up.
+    fn both_angles(&self, first: f64, guess: f64) -> Option<Pulse> {
+        if self.loop_ohm <= 0.0 {
+            return None;
+        }
+        let mut start = guess;
+        let mut end = (FRAC_PI_2 + 0.5 * (FRAC_PI_2 - start)).min(PI);
+        for _ in 0..MOST_NEWTON_STEPS {
+            let pulse = Pulse {
+                length: end - start,
+                ..self.opened(start)
+            };
+            let (balance, slope) = self.balance(start, &pulse);
+            let kept = (-pulse.decay * pulse.length).exp();
+            let current = pulse.current.at(pulse.length, pulse.decay);
+            let current_slope = pulse.current.slopes(pulse.length, pulse.decay).0;
+            let by_start = -kept * pulse.current.slope_at_start(pulse.decay);
+            let start_step = -balance / slope;
+            let end_step = -(current + by_start * start_step) / current_slope;
+            let settled = start_step.abs() <= SETTLED_RAD && end_step.abs() <= SETTLED_RAD;
+            start += start_step;
+            end += end_step;
+            if !(start > first && start < FRAC_PI_2 && end > FRAC_PI_2 && end < PI) {
+                return None;
+            }
+            if settled {
+                return Some(Pulse {
+                    length: end - start,
+                    ..self.opened(start)
+                });
+            }
+        }
+        None
     }
 
     /// Capacitor voltage at which current starts or ends at this angle: there i = 0 and the raw voltage is the source's.
@@ -193,12 +224,14 @@ impl<'a> Solver<'a> {
     /// Charge balance of a period that starts to conduct at `start`, as a capacitor voltage: after minus before; and
     /// its slope. Falls with `start`. Below zero also when the voltage cannot even be held up during the pulse.
     fn surplus(&self, start: f64) -> (f64, f64) {
-        let before = self.edge(start);
+        self.pulse(start)
+            .map_or((-self.crest, -self.crest), |pulse| self.balance(start, &pulse))
+    }
+
+    /// The same for a pulse whose length is known.
+    fn balance(&self, start: f64, pulse: &Pulse) -> (f64, f64) {
+        let before = pulse.stored.one;
         let rise = self.spread * self.crest * start.cos();
-        let pulse = self.pulse(start);
-        let Some(pulse) = pulse else {
-            return (-self.crest, -self.crest);
-        };
         let rest = self.period - pulse.length;
         // Gain and loss apart from the voltage itself: their difference keeps its digits when the ripple is tiny.
         let gain = Sum {
@@ -232,9 +265,8 @@ impl<'a> Solver<'a> {
         steady * length * decay_mean(lost) - stored * (-lost).exp_m1()
     }
 
-    /// The pulse that starts at `start`; `None` when the current has not ended at the source's zero (the raw voltage
-    /// has then fallen below zero).
-    fn pulse(&self, start: f64) -> Option<Pulse> {
+    /// What voltages and currents do from `start` on, for as long as current flows.
+    fn opened(&self, start: f64) -> Pulse {
         let s = self.section;
         let (sin, cos) = start.sin_cos();
         let source = Sum {
@@ -243,7 +275,7 @@ impl<'a> Solver<'a> {
             cos: self.crest * sin,
             exp: 0.0,
         };
-        let pulse = if self.loop_ohm > 0.0 {
+        if self.loop_ohm > 0.0 {
             let beta = self.reactance / self.loop_ohm;
             let a = self.decay;
             let k = beta * self.crest / (1.0 + a * a);
@@ -291,14 +323,20 @@ impl<'a> Solver<'a> {
                 stored: source,
                 raw: source,
             }
-        };
+        }
+    }
+
+    /// The pulse that starts at `start`; `None` when the current has not ended at the source's zero (the raw voltage
+    /// has then fallen below zero).
+    fn pulse(&self, start: f64) -> Option<Pulse> {
+        let pulse = self.opened(start);
         let longest = PI - start;
         if pulse.current.at(longest, pulse.decay) > 0.0 {
             return None;
         }
         let length = if self.loop_ohm > 0.0 {
             // i(0) = 0 is no end of the pulse: divide it out.
-            falling(0.0, longest, PI - 2.0 * start, |x| {
+            falling(0.0, longest, PI - 2.0 * start, 0.0, |x| {
                 if x <= 0.0 {
                     return (pulse.current.slope_at_start(pulse.decay), -1.0);
                 }
@@ -306,82 +344,142 @@ impl<'a> Solver<'a> {
                 (value, (pulse.current.slopes(x, pulse.decay).0 - value) / x)
             })
         } else {
-            falling(0.0, longest, FRAC_PI_2 - start, |x| {
+            falling(0.0, longest, FRAC_PI_2 - start, 0.0, |x| {
                 (pulse.current.at(x, 0.0), pulse.current.slopes(x, 0.0).0)
             })
         };
         Some(Pulse { length, ..pulse })
     }
+}
 
-    fn figures(&self, start: f64) -> Waveform {
-        let s = self.section;
-        let Some(pulse) = self.pulse(start) else {
-            // Cannot be: the root lies where the surplus is not negative, and there the pulse ends.
-            return Waveform {
-                valley_v: -1.0,
-                peak_v: 0.0,
-                mean_v: 0.0,
-                source_mean_a: 0.0,
-                source_rms_a: 0.0,
-                source_peak_a: 0.0,
-                reservoir_rms_a: 0.0,
-                conduction_rad: 0.0,
-            };
-        };
-        let (a, length) = (pulse.decay, pulse.length);
-        let integrals = Integrals::new(length, a);
-        let rest = self.period - length;
-
-        // Crest of the current, then the extremes of the raw voltage on either side of it.
-        let zero_slope = |f: Sum, low: f64, high: f64, sign: f64| {
-            falling(low, high, 0.5 * (low + high), |x| {
-                let (first, second) = f.slopes(x, a);
-                (sign * first, sign * second)
-            })
-        };
-        let crest_at = if pulse.current.slope_at_start(a) > 0.0 {
-            zero_slope(pulse.current, 0.0, length, 1.0)
+impl Waveform {
+    /// Lowest raw voltage: where conduction starts, or behind it while the load still takes more than the source gives.
+    #[must_use]
+    pub fn valley_v(&self) -> f64 {
+        let Some(p) = &self.pulse else { return self.open_v() };
+        if p.raw.slope_at_start(p.decay) >= 0.0 {
+            return p.raw.one;
+        }
+        // The voltage rises where the current crests; the middle of the pulse mostly shows it, and saves that root.
+        let middle = 0.5 * p.length;
+        let rising = if p.raw.slopes(middle, p.decay).0 > 0.0 {
+            middle
         } else {
-            0.0
+            p.crest_at()
         };
-        let at_start = pulse.raw.one;
-        let valley_v = if pulse.raw.slope_at_start(a) < 0.0 && crest_at > 0.0 {
-            at_start.min(pulse.raw.at(zero_slope(pulse.raw, 0.0, crest_at, -1.0), a))
-        } else {
-            at_start
-        };
-        let peak_v = pulse.raw.at(zero_slope(pulse.raw, crest_at, length, 1.0), a);
+        p.raw.one.min(p.raw.at(p.flat(p.raw, 0.0, rising, -1.0), p.decay))
+    }
 
-        // While off, voltage and load current decay exponentially (or the voltage falls straight, without conductance).
-        let stored_at_end = pulse.stored.at(length, a);
-        let load_at_end = (s.load_a + s.load_s * stored_at_end) / self.spread;
-        let lost = self.off_decay * rest;
-        let load_square = load_at_end * load_at_end * rest * decay_mean(2.0 * lost);
-        let steady = s.load_a * self.reactance / self.spread;
-        let stored_off = (stored_at_end * decay_mean(lost) - steady * rest * decay_mean_of_mean(lost)) * rest;
-        let raw_off = (stored_off - s.bank_esr_ohm * s.load_a * rest) / self.spread;
+    /// Highest raw voltage.
+    #[must_use]
+    pub fn peak_v(&self) -> f64 {
+        let Some(p) = &self.pulse else { return self.open_v() };
+        p.raw.at(p.flat(p.raw, p.crest_at(), p.length, 1.0), p.decay)
+    }
 
+    /// Peak-to-peak ripple of the raw voltage.
+    #[must_use]
+    pub fn ripple_v(&self) -> f64 {
+        self.peak_v() - self.valley_v()
+    }
+
+    /// Mean raw voltage.
+    #[must_use]
+    pub fn mean_v(&self) -> f64 {
+        let Some(p) = &self.pulse else { return self.open_v() };
+        let s = &self.section;
+        // While off, the capacitor's voltage decays exponentially (straight, without conductance).
+        let spread = 1.0 + s.bank_esr_ohm * s.load_s;
+        let (rest, lost) = (self.rest(p), self.off_decay * self.rest(p));
+        let steady = s.load_a * self.reactance / spread;
+        let stored = (p.stored_at_end() * decay_mean(lost) - steady * rest * decay_mean_of_mean(lost)) * rest;
+        (self.integrals.of(p.raw) + (stored - s.bank_esr_ohm * s.load_a * rest) / spread) / self.period
+    }
+
+    /// Mean rectified source current.
+    #[must_use]
+    pub fn source_mean_a(&self) -> f64 {
+        self.pulse.map_or(0.0, |p| self.integrals.of(p.current) / self.period)
+    }
+
+    /// Its rms.
+    #[must_use]
+    pub fn source_rms_a(&self) -> f64 {
+        self.pulse.map_or(0.0, |p| {
+            (self.integrals.of_square(p.current).max(0.0) / self.period).sqrt()
+        })
+    }
+
+    /// Its crest.
+    #[must_use]
+    pub fn source_peak_a(&self) -> f64 {
+        self.pulse.map_or(0.0, |p| p.current.at(p.crest_at(), p.decay))
+    }
+
+    /// Rms current in the bank.
+    #[must_use]
+    pub fn reservoir_rms_a(&self) -> f64 {
+        let Some(p) = &self.pulse else { return 0.0 };
+        let s = &self.section;
         let load = Sum {
             one: s.load_a,
             sin: 0.0,
             cos: 0.0,
             exp: 0.0,
         }
-        .mix(1.0, pulse.raw, s.load_s);
-        let charging = pulse.current.mix(1.0, load, -1.0);
-        let per_period = 1.0 / self.period;
-        Waveform {
-            valley_v,
-            peak_v,
-            mean_v: (integrals.of(pulse.raw) + raw_off) * per_period,
-            source_mean_a: integrals.of(pulse.current) * per_period,
-            source_rms_a: (integrals.of_square(pulse.current).max(0.0) * per_period).sqrt(),
-            source_peak_a: pulse.current.at(crest_at, a),
-            reservoir_rms_a: ((integrals.of_square(charging) + load_square).max(0.0) * per_period).sqrt(),
-            conduction_rad: length,
-        }
+        .mix(1.0, p.raw, s.load_s);
+        let charging = p.current.mix(1.0, load, -1.0);
+        // While off, the bank carries the load current, which decays as the voltage does.
+        let rest = self.rest(p);
+        let spread = 1.0 + s.bank_esr_ohm * s.load_s;
+        let load_at_end = (s.load_a + s.load_s * p.stored_at_end()) / spread;
+        let off = load_at_end * load_at_end * rest * decay_mean(2.0 * self.off_decay * rest);
+        ((self.integrals.of_square(charging) + off).max(0.0) / self.period).sqrt()
+    }
+
+    /// Length of one pulse in radians of the mains period.
+    #[must_use]
+    pub fn conduction_rad(&self) -> f64 {
+        self.pulse.map_or(0.0, |p| p.length)
+    }
+
+    /// Without load: the crest less the drop.
+    fn open_v(&self) -> f64 {
+        SQRT_2 * self.section.source_rms_v - self.section.drop_v
+    }
+
+    fn rest(&self, pulse: &Pulse) -> f64 {
+        self.period - pulse.length
     }
 }
+
+impl Pulse {
+    fn stored_at_end(&self) -> f64 {
+        self.stored.at(self.length, self.decay)
+    }
+
+    /// Where the current is highest.
+    fn crest_at(&self) -> f64 {
+        if self.current.slope_at_start(self.decay) > 0.0 {
+            self.flat(self.current, 0.0, self.length, 1.0)
+        } else {
+            0.0
+        }
+    }
+
+    /// Where a quantity stops to rise (`sign` 1) or to fall (-1) between two angles after the start.
+    fn flat(&self, quantity: Sum, low: f64, high: f64, sign: f64) -> f64 {
+        falling(low, high, 0.5 * (low + high), SETTLED_RAD, |x| {
+            let (first, second) = quantity.slopes(x, self.decay);
+            (sign * first, sign * second)
+        })
+    }
+}
+
+/// Newton's steps on both angles settle in four to seven; more means a guess too far off.
+const MOST_NEWTON_STEPS: u32 = 12;
+/// Steps below this leave angles that are exact but for rounding, since the next step would be its square.
+const SETTLED_RAD: f64 = 1e-9;
 
 /// Below this decay the closed forms lose more digits than their series drop.
 const SMALL_DECAY: f64 = 1e-3;

@@ -2,9 +2,10 @@
 
 /// Root of a function that changes sign once in `[low, high]`, from positive at `low` to negative at `high`.
 ///
+/// A Newton step of at most `settled` (0: a few ulps) is the last one; its error is about the square of it.
 /// `f` returns the value and its derivative; an inexact derivative costs steps, never the answer, since a step that
 /// leaves the bracket or does not halve it in time is replaced by bisection. Ends at neighbouring floats.
-pub(super) fn falling(mut low: f64, mut high: f64, start: f64, f: impl Fn(f64) -> (f64, f64)) -> f64 {
+pub(super) fn falling(mut low: f64, mut high: f64, start: f64, settled: f64, f: impl Fn(f64) -> (f64, f64)) -> f64 {
     let mut x = start.clamp(low, high);
     let mut width_before = high - low;
     for step in 0..200 {
@@ -27,7 +28,7 @@ pub(super) fn falling(mut low: f64, mut high: f64, start: f64, f: impl Fn(f64) -
         } else {
             0.5 * (low + high)
         };
-        let close = 2.0 * f64::EPSILON * x.abs().max(f64::MIN_POSITIVE);
+        let close = settled.max(2.0 * f64::EPSILON * x.abs());
         if (newton - x).abs() <= close && newton >= low && newton <= high {
             return newton;
         }

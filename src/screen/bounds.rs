@@ -49,3 +49,14 @@ pub(super) fn least_bank_f(section: &RawSection, level_v: f64, held_v: f64, held
         |level: f64, seconds: f64| section.load_a * seconds / (crest - section.drop_v - level).max(f64::MIN_POSITIVE);
     need(level_v, off_s(level_v)).max(need(held_v, off_s(held_v) + held_s)) * (1.0 - SLACK)
 }
+
+/// Least rms source current while the raw voltage stays at `level_v` or above during conduction.
+///
+/// Bound: the mean current I_L flows within the pulses, none longer than the source stays above level and drop; rms is
+/// least when it is even there: I_rms >= I_L sqrt(period/pulse).
+pub(super) fn least_rms_a(section: &RawSection, level_v: f64) -> f64 {
+    let crest = section.source_rms_v * std::f64::consts::SQRT_2;
+    let period = if section.full_wave { PI } else { 2.0 * PI };
+    let pulse = PI - 2.0 * ((section.drop_v + level_v.max(0.0)) / crest).clamp(0.0, 1.0).asin();
+    section.load_a * (period / pulse.max(f64::MIN_POSITIVE)).sqrt() * (1.0 - SLACK)
+}

@@ -6,11 +6,13 @@
 mod bounds;
 mod column;
 mod prices;
+mod reach;
 mod shelf;
 mod walk;
 
 pub use column::Column;
 pub use prices::FloorPrices;
+pub use reach::Reach;
 pub use shelf::{Must, Shelf};
 pub use walk::{Stop, Walk};
 

@@ -2,8 +2,7 @@
 
 use std::collections::BTreeSet;
 
-use crate::audit::Site;
-use crate::audit::{Check, Stage, transformer, whole};
+use crate::audit::{Check, Site, Stage, reservoir, transformer, whole};
 use crate::build::{device_serves, pieces_of_rectifier};
 use crate::catalogue::{Catalogue, Part, PartId, Rectifier, Reservoir, Sink, Slot, Status, Transformer};
 
@@ -87,6 +86,12 @@ impl<'c> Shelf<'c> {
                 .filter(|&n| n > 0)
                 .min()
         };
+        // A can that does not last without any ripple lasts with none.
+        let lasts = |can: &Reservoir| {
+            rail.paths
+                .iter()
+                .any(|&path| reservoir::wear(site, can, path, Ok(0.0)).iter().all(Check::met))
+        };
         Shelf {
             rail: rail_place,
             transformers: catalogue
@@ -103,7 +108,7 @@ impl<'c> Shelf<'c> {
                 .reservoirs
                 .iter()
                 .flat_map(|can| (1..=supply.caps.cans).map(move |cans| Bank { can, cans }))
-                .filter(|bank| usable(&bank.can.part, u64::from(bank.cans)))
+                .filter(|bank| usable(&bank.can.part, u64::from(bank.cans)) && lasts(bank.can))
                 .collect(),
             stages: catalogue
                 .pass_devices

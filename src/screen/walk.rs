@@ -12,19 +12,17 @@ use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
 use std::time::Instant;
 
-use super::bounds::{least_bank_f, source_reaches};
+use super::bounds::{least_bank_f, least_rms_a, source_reaches};
 use super::column::Column;
 use super::prices::FloorPrices;
+use super::reach::{Reach, Source, bare_circuit, carries};
 use super::shelf::{Bank, Shelf};
 use super::{Counts, Objective};
-use crate::audit::{
-    Check, Corner, Known, NoWave, Raw, SectionHeat, Site, Stage, core_w, rectifier, reservoir, transformer, whole,
-};
-use crate::build::{Hookup, diodes_in_path, hookups, pieces_of_rectifier, sink_takes};
-use crate::catalogue::{Rectifier, RectifierKind, Sink, Transformer};
-use crate::physics::raw_section::{RawSection, Waveform};
+use crate::audit::{Check, Corner, Known, NoWave, Raw, SectionHeat, Site, Stage, rectifier, reservoir, whole};
+use crate::build::{pieces_of_rectifier, sink_takes};
+use crate::catalogue::{Rectifier, RectifierKind, Sink};
+use crate::physics::raw_section::Waveform;
 use crate::physics::winding::WindingLoad;
-use crate::supply::Path;
 use crate::units::Money;
 
 /// When to give up: a deadline, or a signal from the user.
@@ -42,17 +40,6 @@ impl Stop {
     pub fn now(&self) -> bool {
         self.asked.load(Ordering::Relaxed) || self.deadline.is_some_and(|at| Instant::now() >= at)
     }
-}
-
-/// One transformer hook-up with a path.
-struct Source<'c> {
-    transformer: &'c Transformer,
-    hookup: Rc<Hookup>,
-    path: Path,
-    idle_v: f64,
-    core_w: f64,
-    /// Devices whose input ratings hold on it, as places in the shelf, least load first.
-    stages: Vec<usize>,
 }
 
 /// A source with a rectifier; its banks once opened.
@@ -103,25 +90,26 @@ impl<'s, 'c> Walk<'s, 'c> {
     #[must_use]
     pub fn new(
         site: &'s Site<'c>,
-        shelf: Shelf<'c>,
+        mut reach: Reach<'c>,
         objective: Objective,
         prices: FloorPrices,
         counts: &mut Counts,
     ) -> Walk<'s, 'c> {
+        let sources = std::mem::take(&mut reach.sources);
         let mut walk = Walk {
             site,
             objective,
-            prices,
-            sources: sources(site, &shelf),
+            sources,
             pairs: Vec::new(),
             stacks: Vec::new(),
             by_price: Vec::new(),
             heap: BinaryHeap::new(),
-            shelf,
+            shelf: reach.shelf,
+            prices,
         };
         counts.sources += walk.sources.len() as u64;
         walk.by_price = (walk.shelf.banks.iter().enumerate())
-            .map(|(i, bank)| (i, prices.cost(&bank.can.part, u64::from(bank.cans)).0))
+            .map(|(i, bank)| (i, walk.prices.cost(&bank.can.part, u64::from(bank.cans)).0))
             .collect();
         walk.by_price.sort_by_key(|&(i, price)| (price, i));
         let Some(&(_, cheapest_bank)) = walk.by_price.first() else {
@@ -219,30 +207,6 @@ impl<'s, 'c> Walk<'s, 'c> {
         }
     }
 
-    /// The circuit of a pair at a corner without its bank.
-    fn bare_circuit(&self, source: &Source, rectifier: &Rectifier, corner: Corner, load_a: f64) -> Known<RawSection> {
-        let (threshold_v, slope_ohm) = self.site.forward(rectifier, corner)?;
-        let own = WindingLoad {
-            volts_v: source.hookup.volts_v,
-            load_a,
-        };
-        let winding = self
-            .site
-            .winding_ohm(source.transformer, &source.hookup, corner, load_a, &[own]);
-        let diodes = diodes_in_path(source.path);
-        Ok(RawSection {
-            source_rms_v: self.site.source_v(source.transformer, &source.hookup, corner),
-            mains_hz: self.site.supply.mains.frequency_hz,
-            full_wave: source.path != Path::HalfWave,
-            series_ohm: winding + diodes * slope_ohm,
-            drop_v: diodes * threshold_v,
-            bank_f: 1.0,
-            bank_esr_ohm: 0.0,
-            load_a,
-            load_s: 0.0,
-        })
-    }
-
     /// Opens a pair: drops it when no bank can do, else lists its banks by their least key.
     fn open(&mut self, place: usize, counts: &mut Counts) {
         let pair = &self.pairs[place];
@@ -265,7 +229,7 @@ impl<'s, 'c> Walk<'s, 'c> {
         ) else {
             return;
         };
-        let Ok(low) = self.bare_circuit(source, rectifier, Corner::Low, load_a) else {
+        let Ok(low) = bare_circuit(self.site, source, Some(rectifier), Corner::Low, load_a) else {
             return;
         };
         if !source_reaches(&low, level_v) {
@@ -274,13 +238,29 @@ impl<'s, 'c> Walk<'s, 'c> {
         let dip_s = self.site.supply.rails[self.shelf.rail].dip_s.unwrap_or(0.0);
         let least_f = least_bank_f(&low, level_v, floor_v, dip_s);
         let base = self.pair_cost(source, rectifier);
+        let banks_that_do: Vec<(usize, i64)> = (self.by_price.iter().copied())
+            .filter(|&(b, _)| {
+                let bank = self.shelf.banks[b];
+                self.site.can_f(bank.can, Corner::Low) * f64::from(bank.cans) >= least_f
+                    && reservoir::voltage(self.site, bank.can, source.idle_v).met()
+            })
+            .collect();
+        // At the high corner the voltage behind the bank's resistance lies above that of the low corner, which is at
+        // least the wanted valley less what the load drops in the aged resistance.
+        let esr_ohm = (banks_that_do.iter())
+            .map(|&(b, _)| self.shelf.banks[b])
+            .filter_map(|bank| Some(self.site.can_esr_ohm(bank.can, Corner::Low).ok()? / f64::from(bank.cans)))
+            .fold(0.0, f64::max);
+        let Ok(high) = bare_circuit(self.site, source, Some(rectifier), Corner::High, load_a) else {
+            return;
+        };
+        let rms_a = least_rms_a(&high, level_v - esr_ohm * load_a);
+        if !carries(source.transformer, &source.hookup, source.path, Ok(rms_a), load_a) {
+            return;
+        }
         let mut banks = Vec::new();
-        for &(b, price) in &self.by_price {
+        for (b, price) in banks_that_do {
             let bank = self.shelf.banks[b];
-            let enough = self.site.can_f(bank.can, Corner::Low) * f64::from(bank.cans) >= least_f;
-            if !enough || !reservoir::voltage(self.site, bank.can, source.idle_v).met() {
-                continue;
-            }
             let heat_w = match self.objective {
                 Objective::Cost => source.core_w,
                 Objective::Heat => {
@@ -309,7 +289,7 @@ impl<'s, 'c> Walk<'s, 'c> {
         let high = raw.wave(self.site, Corner::High, Ok(load_a), Ok(&own)).ok()?;
         let rail = &self.site.supply.rails[self.shelf.rail];
         let section = SectionHeat::new(self.site, raw, Ok(load_a), Ok(&high)).ok()?;
-        let pass_w = high.mean_v * load_a - rail.voltage_v.abs() * rail.current_a;
+        let pass_w = high.mean_v() * load_a - rail.voltage_v.abs() * rail.current_a;
         Some(source.core_w + section.sum_w() + pass_w)
     }
 
@@ -346,6 +326,9 @@ impl<'s, 'c> Walk<'s, 'c> {
         let source = &self.sources[pair.source];
         let mut found: Vec<Stack<'c>> = Vec::new();
         let mut solved: Option<Solved> = None;
+        if !rectifier::surge(self.site, &raw).met() {
+            return;
+        }
         for (at, &place) in source.stages.iter().enumerate() {
             let stage = &self.shelf.stages[place];
             let Ok(load_a) = stage.load_a() else { continue };
@@ -353,12 +336,13 @@ impl<'s, 'c> Walk<'s, 'c> {
             #[allow(clippy::float_cmp)]
             if solved.as_ref().is_none_or(|s| s.load_a != load_a) {
                 let mut next = Solved::new(load_a);
-                // The valley falls as the load rises: what is too low for every device left stays so.
+                // As the load rises, the valley falls and the source current rises at every instant: what fails here
+                // for every device left stays so.
                 let low = next.wave(self.site, &raw, Corner::Low, counts);
                 let hope = source.stages[at..]
                     .iter()
                     .any(|&i| self.shelf.stages[i].headroom(self.site, low).met());
-                if !hope {
+                if !hope || !feeds(&raw, load_a, next.wave(self.site, &raw, Corner::High, counts)) {
                     break;
                 }
                 solved = Some(next);
@@ -394,9 +378,7 @@ impl<'s, 'c> Walk<'s, 'c> {
         let high_ref = high.as_ref().map_err(|&column| column);
         let low_ref = low.as_ref().map_err(|&column| column);
         if solved.collapsed
-            || !*solved
-                .section_holds
-                .get_or_insert_with(|| section_holds(site, raw, load_a, high_ref))
+            || !*solved.lasts.get_or_insert_with(|| lasts(site, raw, high_ref))
             || !met(stage.accuracy(low_ref, high_ref))
         {
             return None;
@@ -491,7 +473,8 @@ struct Solved {
     load_a: f64,
     waves: [Option<Known<Waveform>>; 3],
     collapsed: bool,
-    section_holds: Option<bool>,
+    /// Whether its cans last.
+    lasts: Option<bool>,
 }
 
 impl Solved {
@@ -500,7 +483,7 @@ impl Solved {
             load_a,
             waves: [None; 3],
             collapsed: false,
-            section_holds: None,
+            lasts: None,
         }
     }
 
@@ -539,52 +522,16 @@ impl Solved {
 /// Stands for a waveform that does not exist; every limit that needs it then fails.
 const COLLAPSED: &str = "collapse";
 
-/// The limits of transformer, rectifier and reservoir that hang on the high corner's waveform.
-fn section_holds(site: &Site, raw: &Raw, load_a: f64, high: Known<&Waveform>) -> bool {
-    let mut holds = rectifier::current(raw, high).met()
-        && rectifier::surge(site, raw).met()
-        && reservoir::wear(site, raw, high).iter().all(Check::met)
-        && transformer::load(raw.transformer, high.map(|wave| transformer::section_va(raw, wave))).met();
-    transformer::winding(raw, Ok(load_a), high, |check| holds &= check.met());
-    holds
+/// The limits of transformer and rectifier that hang on the source current at the high corner; what fails one fails it
+/// at any higher load.
+fn feeds(raw: &Raw, load_a: f64, high: Known<&Waveform>) -> bool {
+    let rms_a = high.map(Waveform::source_rms_a);
+    rectifier::current(raw, high).met() && carries(raw.transformer, raw.hookup, raw.path, rms_a, load_a)
 }
 
-/// Every hook-up and path of the shelf's transformers on which some device's input ratings hold.
-fn sources<'c>(site: &Site<'c>, shelf: &Shelf<'c>) -> Vec<Source<'c>> {
-    let mut found = Vec::new();
-    for &transformer in &shelf.transformers {
-        for hookup in hookups(transformer) {
-            let hookup = Rc::new(hookup);
-            let idle_v = site.idle_v(transformer, &hookup);
-            let mut stages: Vec<usize> = (0..shelf.stages.len())
-                .filter(|&i| {
-                    let mut holds = shelf.stages[i].load_a().is_ok();
-                    shelf.stages[i].input(idle_v, |check| holds &= check.met());
-                    holds
-                })
-                .collect();
-            stages.sort_by(|&a, &b| {
-                let load = |i: usize| shelf.stages[i].load_a().unwrap_or(f64::INFINITY);
-                load(a).total_cmp(&load(b)).then(a.cmp(&b))
-            });
-            if stages.is_empty() {
-                continue;
-            }
-            for &path in site.supply.rails[shelf.rail]
-                .paths
-                .iter()
-                .filter(|&&path| hookup.kind.takes(path))
-            {
-                found.push(Source {
-                    transformer,
-                    hookup: Rc::clone(&hookup),
-                    path,
-                    idle_v,
-                    core_w: core_w(site, transformer),
-                    stages: stages.clone(),
-                });
-            }
-        }
-    }
-    found
+/// Whether the cans last at the high corner.
+fn lasts(site: &Site, raw: &Raw, high: Known<&Waveform>) -> bool {
+    reservoir::wear(site, raw.reservoir, raw.path, reservoir::ripple_a(raw, high))
+        .iter()
+        .all(Check::met)
 }

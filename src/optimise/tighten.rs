@@ -1,0 +1,162 @@
+//! Owns the tighter bound on cost: which columns can still take part in a build of at most so much.
+//!
+//! A column's least price assumes that every other rail shares every part of it. But a rail that shares a part pays for
+//! that: it must take a column that holds the part, which is dearer than its cheapest. For a column c of rail i and any
+//! build with it, let S_p be the rails that share part p with it. Then
+//!
+//!     cost >= sum over p of q_p u(q_p + most that S_p use) + sum over rails j of (min_j + max over shared p of extra_j(p))
+//!
+//! with min_j the least column of rail j and extra_j(p) what its least column with p costs more. The maximum is at least
+//! the mean over the parts that could gain, so each part may be charged its share and the best S_p found part by part.
+
+use crate::catalogue::Part;
+
+use super::columns::Ready;
+use crate::units::Money;
+
+/// Rails beyond which subsets are no longer tried one by one.
+const MOST_SUBSET_RAILS: usize = 6;
+
+/// Columns of every rail, by place, that a build of cost at most `most` can still hold, each with its least price given
+/// what the others can share.
+pub(super) fn tighten(rails: &[&[Ready]], parts: usize, builds: u64, most: i64) -> Vec<Vec<(usize, i64)>> {
+    let mut kept: Vec<Vec<(usize, i64)>> = rails
+        .iter()
+        .map(|ready| (0..ready.len()).map(|i| (i, ready[i].key.0)).collect())
+        .collect();
+    if rails.len() == 1 {
+        kept[0].retain(|&(_, floor)| floor <= most);
+        return kept;
+    }
+    loop {
+        let before: usize = kept.iter().map(Vec::len).sum();
+        let uses: Vec<Uses> = rails
+            .iter()
+            .zip(&kept)
+            .map(|(ready, kept)| Uses::new(ready, kept, parts))
+            .collect();
+        let floors: Vec<Vec<i64>> = (rails.iter().zip(&kept).enumerate())
+            .map(|(i, (ready, kept))| {
+                kept.iter()
+                    .map(|&(place, _)| floor(&ready[place], i, &uses, builds))
+                    .collect()
+            })
+            .collect();
+        for (kept, floors) in kept.iter_mut().zip(floors) {
+            kept.iter_mut().zip(floors).for_each(|(entry, floor)| entry.1 = floor);
+        }
+        // The least column of each rail under the sharper floors, and what columns with each part cost more.
+        let uses: Vec<Uses> = rails
+            .iter()
+            .zip(&kept)
+            .map(|(ready, kept)| Uses::new(ready, kept, parts))
+            .collect();
+        for (i, (ready, kept)) in rails.iter().zip(&mut kept).enumerate() {
+            let others: i64 = uses
+                .iter()
+                .enumerate()
+                .filter(|&(j, _)| j != i)
+                .map(|(_, u)| u.least)
+                .sum();
+            kept.retain(|&(place, floor)| {
+                floor + others <= most && shared_bound(&ready[place], i, &uses, builds) + others <= most
+            });
+            if kept.is_empty() {
+                return vec![Vec::new(); rails.len()];
+            }
+        }
+        if kept.iter().map(Vec::len).sum::<usize>() == before {
+            break;
+        }
+    }
+    for kept in &mut kept {
+        kept.sort_by_key(|&(place, floor)| (floor, place));
+    }
+    kept
+}
+
+/// What the kept columns of one rail use.
+struct Uses {
+    /// Least floor.
+    least: i64,
+    /// By part: most pieces, and by how much the least column with it exceeds the least of all.
+    by_part: Vec<(u64, i64)>,
+}
+
+impl Uses {
+    fn new(ready: &[Ready], kept: &[(usize, i64)], parts: usize) -> Uses {
+        let least = kept.iter().map(|&(_, floor)| floor).min().unwrap_or(0);
+        let mut by_part = vec![(0, i64::MAX); parts];
+        for &(place, floor) in kept {
+            for &(part, pieces) in &ready[place].lines {
+                let (most, extra) = &mut by_part[part.id.0 as usize];
+                *most = pieces.max(*most);
+                *extra = (floor - least).min(*extra);
+            }
+        }
+        Uses { least, by_part }
+    }
+}
+
+fn price(part: &Part, pieces: u64, in_all: u64, builds: u64) -> Money {
+    let most = in_all * builds;
+    part.unit_price(part.stock.map_or(most, |stock| most.min(stock))) * pieces
+}
+
+/// Price of a column when every other rail shares all that it can.
+fn floor(ready: &Ready, rail: usize, uses: &[Uses], builds: u64) -> i64 {
+    let others = |part: &Part| -> u64 {
+        let id = part.id.0 as usize;
+        uses.iter()
+            .enumerate()
+            .filter(|&(j, _)| j != rail)
+            .map(|(_, u)| u.by_part[id].0)
+            .sum()
+    };
+    let parts: Money = ready
+        .lines
+        .iter()
+        .map(|&(part, q)| price(part, q, q + others(part), builds))
+        .sum();
+    (parts + ready.column.pass.fitted_price).0
+}
+
+/// Price of a column when sharing is charged for; see the module head.
+fn shared_bound(ready: &Ready, rail: usize, uses: &[Uses], builds: u64) -> i64 {
+    let mut alone = ready.column.pass.fitted_price;
+    // Parts that can gain, each with the rails that can share it as (pieces, extra).
+    let mut gaining: Vec<(&Part, u64, Money, Vec<(u64, i64)>)> = Vec::new();
+    for &(part, pieces) in &ready.lines {
+        let own = price(part, pieces, pieces, builds);
+        alone = alone + own;
+        let id = part.id.0 as usize;
+        let sharing: Vec<(u64, i64)> = (uses.iter().enumerate())
+            .filter(|&(j, u)| j != rail && u.by_part[id].0 > 0)
+            .map(|(_, u)| u.by_part[id])
+            .collect();
+        let all: u64 = sharing.iter().map(|&(most, _)| most).sum();
+        if price(part, pieces, pieces + all, builds) < own {
+            gaining.push((part, pieces, own, sharing));
+        }
+    }
+    let share = i64::try_from(gaining.len()).unwrap_or(1).max(1);
+    let gains: i64 = gaining
+        .iter()
+        .map(|(part, pieces, own, sharing)| {
+            let gain = |more: u64, extra: i64| own.0 - price(part, *pieces, pieces + more, builds).0 - extra / share;
+            if sharing.len() > MOST_SUBSET_RAILS {
+                let least = sharing.iter().map(|&(_, extra)| extra).min().unwrap_or(0);
+                return gain(sharing.iter().map(|&(most, _)| most).sum(), least).max(0);
+            }
+            let subset = |set: u32| {
+                let within = sharing.iter().enumerate().filter(|&(k, _)| set & (1 << k) != 0);
+                let (more, extra) = within.fold((0, 0), |(more, extra), (_, &(most, e))| {
+                    (more + most, extra + e / share)
+                });
+                gain(more, extra * share)
+            };
+            (0..1_u32 << sharing.len()).map(subset).max().unwrap_or(0)
+        })
+        .sum();
+    alone.0 - gains
+}
