@@ -21,6 +21,18 @@ pub struct Fault {
     pub allowed: String,
 }
 
+impl Fault {
+    /// What is wrong and what is allowed, in one sentence.
+    #[must_use]
+    pub fn message(&self) -> String {
+        if self.allowed.is_empty() {
+            self.problem.clone()
+        } else {
+            format!("{}; {}", self.problem, self.allowed)
+        }
+    }
+}
+
 impl fmt::Display for Fault {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
         if !self.file.is_empty() {
@@ -40,10 +52,6 @@ impl fmt::Display for Fault {
         if !self.text.is_empty() {
             write!(f, "\"{}\" ", self.text)?;
         }
-        write!(f, "{}", self.problem)?;
-        if !self.allowed.is_empty() {
-            write!(f, "; {}", self.allowed)?;
-        }
-        Ok(())
+        write!(f, "{}", self.message())
     }
 }

@@ -4,9 +4,12 @@
 pub mod audit;
 pub mod build;
 pub mod catalogue;
+pub mod cli;
 pub mod fault;
 pub mod optimise;
 pub mod physics;
+pub mod report;
+pub mod saved;
 pub mod screen;
 pub mod suggest;
 pub mod supply;

@@ -1,0 +1,110 @@
+//! Owns what is said about an answer: one plain value, and the forms (table, JSON, CSV) as pure functions of it.
+
+pub mod csv;
+pub mod json;
+pub mod none;
+pub mod schema;
+pub mod table;
+mod text;
+
+use crate::audit::{Audit, Margin, audit, cautions};
+use crate::build::{Build, Line};
+use crate::optimise::{Found, Outcome, Proof};
+use crate::screen::Objective;
+use crate::supply::Supply;
+
+pub use text::printable;
+
+/// How far the proof of one build goes, in the objective's own unit (currency or watts).
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct ProofLine {
+    /// "proved", "best found" or "open".
+    pub status: &'static str,
+    /// The build's objective; `None` when there is no build.
+    pub value: Option<f64>,
+    /// No feasible build has a lower objective than this.
+    pub bound: f64,
+}
+
+impl ProofLine {
+    /// For one build of an outcome, or for none.
+    #[must_use]
+    #[allow(clippy::cast_precision_loss)]
+    pub fn new(outcome: &Outcome, found: Option<&Found>, objective: Objective) -> ProofLine {
+        let unit = |millionths: i64| millionths as f64 / 1e6;
+        let value = found.map(|f| unit(f.key.objective(objective)));
+        match outcome.proof {
+            Proof::Proved => ProofLine {
+                status: "proved",
+                value,
+                bound: value.unwrap_or(0.0),
+            },
+            Proof::Open { bound } => ProofLine {
+                status: if found.is_some() { "best found" } else { "open" },
+                value,
+                bound: unit(bound),
+            },
+        }
+    }
+}
+
+/// Everything that is said about one build.
+#[derive(Debug, Clone)]
+pub struct Report<'c> {
+    /// The requirement.
+    pub supply: &'c Supply,
+    /// The choice.
+    pub build: Build<'c>,
+    /// The verdict.
+    pub audit: Audit,
+    /// Bill of materials.
+    pub lines: Vec<Line<'c>>,
+    /// What was minimised and how far it is proved; `None` for an audited build.
+    pub proof: Option<(Objective, ProofLine)>,
+    /// What a person must know.
+    pub cautions: Vec<String>,
+    /// Currency of all prices.
+    pub currency: Option<String>,
+    /// Folder of the catalogue.
+    pub catalogue: String,
+}
+
+impl<'c> Report<'c> {
+    /// Audits a build and gathers what is said about it.
+    #[must_use]
+    pub fn new(
+        supply: &'c Supply,
+        build: Build<'c>,
+        proof: Option<(Objective, ProofLine)>,
+        currency: Option<String>,
+        catalogue: String,
+    ) -> Report<'c> {
+        Report {
+            audit: audit(supply, &build),
+            lines: build.lines(supply),
+            cautions: cautions(supply, &build),
+            supply,
+            build,
+            proof,
+            currency,
+            catalogue,
+        }
+    }
+
+    /// Every limit, the tightest first; equally tight ones in the order of the audit.
+    #[must_use]
+    pub fn by_tightness(&self) -> Vec<&Margin> {
+        let mut margins: Vec<&Margin> = self.audit.margins.iter().collect();
+        margins.sort_by(|a, b| a.check.tightness().total_cmp(&b.check.tightness()));
+        margins
+    }
+
+    /// Unit of a limit, with the currency in place.
+    #[must_use]
+    pub fn unit(&self, margin: &Margin) -> &str {
+        match margin.check.limit.unit() {
+            "" => self.currency.as_deref().unwrap_or(""),
+            unit => unit,
+        }
+    }
+}

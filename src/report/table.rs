@@ -1,0 +1,391 @@
+//! Owns the tables: what a person reads, orders from and checks.
+
+use comfy_table::presets::NOTHING;
+use comfy_table::{CellAlignment, ContentArrangement, Table};
+use comfy_table::{ContentLineStyle, LineStyle};
+
+use super::Report;
+use super::json::wave_figures;
+use super::text::{digits, engineering, printable};
+use crate::build::Line;
+use crate::catalogue::{Part, Sink};
+use crate::fault::Fault;
+use crate::physics::raw_section::Waveform;
+use crate::screen::Objective;
+
+/// How a page is set.
+#[derive(Debug, Clone, Copy, Default)]
+pub struct Page {
+    /// Columns of the terminal; `None`: lines are not wrapped.
+    pub width: Option<u16>,
+    /// Whether colour may be used. Nothing is said by colour alone.
+    pub colour: bool,
+}
+
+/// Pieces left on the shelf after the run; `None`: not limited.
+#[must_use]
+pub fn left(line: &Line, builds: u64) -> Option<u64> {
+    line.part.stock.map(|stock| stock.saturating_sub(line.qty * builds))
+}
+
+/// One build: verdict, wiring, bill of materials, margins, heat, cautions.
+#[must_use]
+pub fn build(report: &Report, page: Page) -> String {
+    let mut out = String::new();
+    out.push_str(&verdict(report, page));
+    out.push_str(&wiring(report));
+    out.push_str(&format!(
+        "\nBill of materials for {}\n",
+        counted(report.supply.builds, "unit")
+    ));
+    out.push_str(&bill(report, page));
+    out.push_str("\nMargins, tightest first\n");
+    out.push_str(&margins(report, page));
+    out.push_str("\nHeat at the high corner, full load\n");
+    out.push_str(&heat(report, page));
+    out.push_str(&cautions(&report.cautions, page));
+    out
+}
+
+/// An audited build: whether it passes, every margin, heat, cautions.
+#[must_use]
+pub fn audit(report: &Report, page: Page) -> String {
+    let failing = report.audit.margins.iter().filter(|m| !m.check.met()).count();
+    let all = report.audit.margins.len();
+    let words = match failing {
+        0 => format!("passes: all {all} limits are met"),
+        _ => format!("fails: {failing} of {all} limits are not met"),
+    };
+    let mut out = strong(&words, failing == 0, page);
+    out.push_str("\n\nMargins, tightest first\n");
+    out.push_str(&margins(report, page));
+    out.push_str("\nHeat at the high corner, full load\n");
+    out.push_str(&heat(report, page));
+    out.push_str(&cautions(&report.cautions, page));
+    out
+}
+
+/// A ranking: one row for each build.
+#[must_use]
+pub fn rank(reports: &[Report], page: Page) -> String {
+    let currency = reports.first().and_then(|r| r.currency.as_deref()).unwrap_or("");
+    let mut table = sheet(
+        &["", &format!("Cost {currency}"), "Heat W", "Tightest", "Parts"],
+        &[0, 1, 2],
+        page,
+    );
+    for (place, report) in reports.iter().enumerate() {
+        let parts: Vec<String> = report
+            .lines
+            .iter()
+            .map(|l| format!("{} {}", l.qty, printable(&l.part.name)))
+            .collect();
+        let tightest = report.audit.tightest().map_or(String::new(), |m| {
+            format!(
+                "{} {} {}",
+                printable(&m.of),
+                m.check.limit.word(),
+                margin_text(m.check.margin(), report.unit(m))
+            )
+        });
+        table.add_row([
+            (place + 1).to_string(),
+            report.audit.cost.to_string(),
+            report.audit.heat_w.map_or("?".into(), digits),
+            tightest,
+            parts.join(", "),
+        ]);
+    }
+    let mut out = reports.first().map(|r| verdict(r, page)).unwrap_or_default();
+    out.push_str(&set(&table));
+    // The cautions of the best build, which all builds of the list share in the main.
+    out.push_str(&cautions(reports.first().map_or(&[][..], |r| &r.cautions), page));
+    out
+}
+
+/// The figures of `wave`.
+#[must_use]
+pub fn wave(wave: Option<&Waveform>, page: Page) -> String {
+    let Some(wave) = wave else {
+        return strong(
+            "collapses: no periodic state holds a raw voltage above zero",
+            false,
+            page,
+        ) + "\n";
+    };
+    let mut table = sheet(&["Figure", "Value"], &[1], page);
+    for (key, value, unit) in wave_figures(wave) {
+        let name = key.rsplit_once('_').map_or(key, |(name, _)| name).replace('_', " ");
+        let name = if unit == "deg" {
+            "conduction of one pulse".to_owned()
+        } else {
+            name
+        };
+        table.add_row([name, engineering(value, unit)]);
+    }
+    set(&table)
+}
+
+/// Faults and warnings of a catalogue, one to a line, then the counts.
+#[must_use]
+pub fn vet(faults: &[Fault], warnings: &[Fault], counts: &[(&'static str, usize)]) -> String {
+    let mut out = String::new();
+    for fault in faults {
+        out.push_str(&format!("{}\n", printable(&fault.to_string())));
+    }
+    for warning in warnings {
+        out.push_str(&format!("warning: {}\n", printable(&warning.to_string())));
+    }
+    let rows: Vec<String> = counts.iter().map(|(file, rows)| format!("{file} {rows}")).collect();
+    out.push_str(&format!(
+        "{}, {} in rows: {}\n",
+        counted(faults.len() as u64, "fault"),
+        counted(warnings.len() as u64, "warning"),
+        rows.join(", ")
+    ));
+    out
+}
+
+fn verdict(report: &Report, page: Page) -> String {
+    let currency = report.currency.as_deref().unwrap_or("");
+    let money = |text: String| {
+        if currency.is_empty() {
+            text
+        } else {
+            format!("{text} {currency}")
+        }
+    };
+    let heat = report
+        .audit
+        .heat_w
+        .map_or("heat unknown".into(), |w| format!("{} W", digits(w)));
+    let cost = money(report.audit.cost.to_string());
+    let mut out = match report.proof {
+        Some((objective, proof)) => {
+            let superlative = match objective {
+                Objective::Cost => "cheapest",
+                Objective::Heat => "coolest",
+            };
+            let proved = proof.status == "proved";
+            let words = if proved {
+                format!("proved {superlative}")
+            } else {
+                "best found".into()
+            };
+            let mut line = strong(&format!("{words}: {cost} a unit, {heat}"), proved, page);
+            if !proved {
+                let bound = match objective {
+                    Objective::Cost => money(format!("{:.4}", proof.bound)),
+                    Objective::Heat => format!("{} W", digits(proof.bound)),
+                };
+                line.push_str(&format!("\nstopped before the proof: no build has less than {bound}"));
+            }
+            line
+        }
+        None => strong(&format!("{cost} a unit, {heat}"), report.audit.passes(), page),
+    };
+    out.push('\n');
+    if !report.supply.name.is_empty() {
+        let run = report
+            .lines
+            .iter()
+            .map(|l| l.cost() * report.supply.builds)
+            .sum::<crate::units::Money>();
+        let units = counted(report.supply.builds, "unit");
+        out.push_str(&format!(
+            "{}, {units}: {}\n",
+            printable(&report.supply.name),
+            money(run.to_string())
+        ));
+    }
+    out.push('\n');
+    out
+}
+
+/// Which part sits where, a paragraph for each rail.
+fn wiring(report: &Report) -> String {
+    let name = |part: &Part| printable(&part.name);
+    let on = |sink: Option<&Sink>| sink.map_or(String::new(), |s| format!(" on sink {}", printable(&s.part.name)));
+    let mut out = String::new();
+    for (rail, choice) in report.supply.rails.iter().zip(&report.build.rails) {
+        let section = &report.build.sections[choice.section];
+        let transformer = &report.build.transformers[section.transformer];
+        let places: Vec<String> = section.hookup.secondaries.iter().map(ToString::to_string).collect();
+        let pieces = crate::build::pieces_of_rectifier(section.rectifier.kind, section.path);
+        out.push_str(&format!(
+            "{}: {} {}\n  {} {}, secondary {} {}\n  {}: {} {} x {}{}, {} x {}\n  {}{}\n",
+            printable(&rail.name),
+            engineering(rail.voltage_v, "V"),
+            engineering(rail.current_a, "A"),
+            transformer.id,
+            name(&transformer.part.part),
+            places.join("+"),
+            section.hookup.kind.word(),
+            section.id,
+            section.path.word(),
+            pieces,
+            name(&section.rectifier.part),
+            on(section.rectifier_sink),
+            section.cans,
+            name(&section.reservoir.part),
+            name(&choice.pass.part),
+            on(choice.sink),
+        ));
+    }
+    out
+}
+
+fn bill(report: &Report, page: Page) -> String {
+    let header = [
+        "Part",
+        "Description",
+        "Unit needs",
+        "Run needs",
+        "Shelf",
+        "Left",
+        "Price each",
+        "Run cost",
+    ];
+    let mut table = sheet(&header, &[2, 3, 4, 5, 6, 7], page);
+    for line in &report.lines {
+        let run = line.qty * report.supply.builds;
+        table.add_row([
+            printable(&line.part.name),
+            printable(&line.part.description),
+            line.qty.to_string(),
+            run.to_string(),
+            line.part.stock.map_or("-".into(), |s| s.to_string()),
+            left(line, report.supply.builds).map_or("-".into(), |l| l.to_string()),
+            line.unit_price.to_string(),
+            (line.unit_price * run).to_string(),
+        ]);
+    }
+    set(&table)
+}
+
+fn margins(report: &Report, page: Page) -> String {
+    let mut table = sheet(
+        &["Of", "Limit", "Value", "Bound", "Margin", "", "Corner"],
+        &[2, 3, 4],
+        page,
+    );
+    for margin in report.by_tightness() {
+        let check = &margin.check;
+        let unit = report.unit(margin);
+        let number = |value: Option<f64>| value.map_or("?".into(), |v| engineering(v, unit));
+        let verdict = match (check.missing(), check.met()) {
+            (Some(column), _) => format!("FAILS: {column} is blank"),
+            (None, true) => String::new(),
+            (None, false) => "FAILS".into(),
+        };
+        table.add_row([
+            printable(&margin.of),
+            check.limit.word().to_owned(),
+            number(check.value.ok()),
+            number(check.bound.ok()),
+            margin_text(check.margin(), unit),
+            verdict,
+            check.corner.map_or("", |c| c.word()).to_owned(),
+        ]);
+    }
+    set(&table)
+}
+
+/// A difference of temperatures is in kelvin.
+fn margin_text(margin: Option<f64>, unit: &str) -> String {
+    let unit = if unit == "degC" { "K" } else { unit };
+    margin.map_or("?".into(), |m| engineering(m, unit))
+}
+
+fn heat(report: &Report, page: Page) -> String {
+    let mut table = sheet(&["Of", "Where", "Part", "Heat W"], &[3], page);
+    for item in &report.audit.heat {
+        table.add_row([
+            printable(&item.of),
+            item.what.to_owned(),
+            printable(&item.part),
+            digits(item.heat_w),
+        ]);
+    }
+    if let Some(all) = report.audit.heat_w {
+        table.add_row(["all".to_owned(), String::new(), String::new(), digits(all)]);
+    }
+    set(&table)
+}
+
+fn cautions(cautions: &[String], page: Page) -> String {
+    let mut out = String::from("\nCautions\n");
+    for caution in cautions {
+        out.push_str(&wrapped(&printable(caution), "- ", "  ", page.width));
+    }
+    out
+}
+
+/// A table in the house look: a ruled header, two spaces between columns.
+fn sheet(header: &[&str], numbers: &[usize], page: Page) -> Table {
+    let mut table = Table::new();
+    table
+        .load_style(
+            NOTHING
+                .header_separator(LineStyle::none().fill('-').junction(' '))
+                .content_lines(ContentLineStyle::none()),
+        )
+        .set_header(header.iter().copied());
+    match page.width {
+        Some(width) => table
+            .set_content_arrangement(ContentArrangement::Dynamic)
+            .set_width(width),
+        None => table.set_content_arrangement(ContentArrangement::Disabled),
+    };
+    for column in table.column_iter_mut() {
+        column.set_padding((0, 2));
+    }
+    for &place in numbers {
+        if let Some(column) = table.column_mut(place) {
+            column.set_cell_alignment(CellAlignment::Right);
+        }
+    }
+    table
+}
+
+fn set(table: &Table) -> String {
+    table.lines().map(|line| format!("{}\n", line.trim_end())).collect()
+}
+
+/// Words broken at the page's width, later lines indented.
+fn wrapped(text: &str, first: &str, later: &str, width: Option<u16>) -> String {
+    let most = width.map_or(usize::MAX, usize::from).max(20);
+    let mut out = String::new();
+    let mut line = first.to_owned();
+    let mut empty = true;
+    for word in text.split(' ') {
+        if !empty && line.chars().count() + 1 + word.chars().count() > most {
+            out.push_str(&line);
+            out.push('\n');
+            line = later.to_owned();
+            empty = true;
+        }
+        if !empty {
+            line.push(' ');
+        }
+        line.push_str(word);
+        empty = false;
+    }
+    out + &line + "\n"
+}
+
+fn strong(text: &str, good: bool, page: Page) -> String {
+    match (page.colour, good) {
+        (false, _) => text.to_owned(),
+        (true, true) => format!("\u{1b}[1;32m{text}\u{1b}[0m"),
+        (true, false) => format!("\u{1b}[1;31m{text}\u{1b}[0m"),
+    }
+}
+
+fn counted(n: u64, what: &str) -> String {
+    if n == 1 {
+        format!("1 {what}")
+    } else {
+        format!("{n} {what}s")
+    }
+}
