@@ -1,8 +1,7 @@
 //! Owns the tables: what a person reads, orders from and checks.
 
 use comfy_table::presets::NOTHING;
-use comfy_table::{CellAlignment, ContentArrangement, Table};
-use comfy_table::{ContentLineStyle, LineStyle};
+use comfy_table::{CellAlignment, ColumnConstraint, ContentArrangement, ContentLineStyle, LineStyle, Table};
 
 use super::Report;
 use super::json::wave_figures;
@@ -35,8 +34,8 @@ pub fn build(report: &Report, page: Page) -> String {
     out.push_str(&verdict(report, page));
     out.push_str(&wiring(report));
     out.push_str(&format!(
-        "\nBill of materials for {}\n",
-        counted(report.supply.builds, "unit")
+        "\nBill of materials: pieces per unit, for the run of {}, on the shelf, left after it\n",
+        report.supply.builds
     ));
     out.push_str(&bill(report, page));
     out.push_str("\nMargins, tightest first\n");
@@ -72,6 +71,7 @@ pub fn rank(reports: &[Report], page: Page) -> String {
     let mut table = sheet(
         &["", &format!("Cost {currency}"), "Heat W", "Tightest", "Parts"],
         &[0, 1, 2],
+        &[3, 4],
         page,
     );
     for (place, report) in reports.iter().enumerate() {
@@ -113,7 +113,7 @@ pub fn wave(wave: Option<&Waveform>, page: Page) -> String {
             page,
         ) + "\n";
     };
-    let mut table = sheet(&["Figure", "Value"], &[1], page);
+    let mut table = sheet(&["Figure", "Value"], &[1], &[], page);
     for (key, value, unit) in wave_figures(wave) {
         let name = key.rsplit_once('_').map_or(key, |(name, _)| name).replace('_', " ");
         let name = if unit == "deg" {
@@ -246,7 +246,7 @@ fn bill(report: &Report, page: Page) -> String {
         "Price each",
         "Run cost",
     ];
-    let mut table = sheet(&header, &[2, 3, 4, 5, 6, 7], page);
+    let mut table = sheet(&header, &[2, 3, 4, 5, 6, 7], &[1], page);
     for line in &report.lines {
         let run = line.qty * report.supply.builds;
         table.add_row([
@@ -267,6 +267,7 @@ fn margins(report: &Report, page: Page) -> String {
     let mut table = sheet(
         &["Of", "Limit", "Value", "Bound", "Margin", "", "Corner"],
         &[2, 3, 4],
+        &[],
         page,
     );
     for margin in report.by_tightness() {
@@ -298,7 +299,7 @@ fn margin_text(margin: Option<f64>, unit: &str) -> String {
 }
 
 fn heat(report: &Report, page: Page) -> String {
-    let mut table = sheet(&["Of", "Where", "Part", "Heat W"], &[3], page);
+    let mut table = sheet(&["Of", "Where", "Part", "Heat W"], &[3], &[], page);
     for item in &report.audit.heat {
         table.add_row([
             printable(&item.of),
@@ -321,8 +322,9 @@ fn cautions(cautions: &[String], page: Page) -> String {
     out
 }
 
-/// A table in the house look: a ruled header, two spaces between columns.
-fn sheet(header: &[&str], numbers: &[usize], page: Page) -> Table {
+/// A table in the house look: a ruled header, two spaces between columns. On a narrow page only the columns of free
+/// text in `wraps` give way.
+fn sheet(header: &[&str], numbers: &[usize], wraps: &[usize], page: Page) -> Table {
     let mut table = Table::new();
     table
         .load_style(
@@ -337,8 +339,11 @@ fn sheet(header: &[&str], numbers: &[usize], page: Page) -> Table {
             .set_width(width),
         None => table.set_content_arrangement(ContentArrangement::Disabled),
     };
-    for column in table.column_iter_mut() {
-        column.set_padding((0, 2));
+    for (place, column) in table.column_iter_mut().enumerate() {
+        column.set_padding((0, if place + 1 == header.len() { 0 } else { 2 }));
+        if !wraps.contains(&place) {
+            column.set_constraint(ColumnConstraint::ContentWidth);
+        }
     }
     for &place in numbers {
         if let Some(column) = table.column_mut(place) {

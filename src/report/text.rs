@@ -16,6 +16,7 @@ pub(super) fn engineering(value: f64, unit: &str) -> String {
         // Fractions read better in per cent.
         "1" => return format!("{} %", digits(value * 100.0)),
         "" => return digits(value),
+        "pieces" => return format!("{value:.0} {unit}"),
         _ if !takes_prefix => return format!("{} {unit}", digits(value)),
         _ => {}
     }
