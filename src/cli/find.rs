@@ -10,7 +10,7 @@ use clap::{Args, ValueEnum};
 use super::output::{Answer, page};
 use super::{Common, Failure, Format, call_fault, input};
 use crate::catalogue::{Catalogue, Loaded};
-use crate::optimise::{Outcome, Proof, Question, optimise};
+use crate::optimise::{NODE_BUDGET, Outcome, Proof, Question, optimise};
 use crate::report::{ProofLine, Report, csv, json, none, table};
 use crate::screen::{Counts, Objective, Stop};
 use crate::supply::{Supply, read};
@@ -152,6 +152,7 @@ impl Asked {
             without,
             with,
             stop,
+            node_budget: NODE_BUDGET,
         })
     }
 }

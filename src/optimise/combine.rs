@@ -3,61 +3,72 @@
 use super::Question;
 use super::best::{Best, Bill};
 use super::columns::Ready;
+use super::pool::{Kept, Pool};
 use crate::audit::{compared, total_w, whole};
 use crate::build::{Build, Instance, RailChoice, Section, section_id, transformer_id};
 use crate::catalogue::Part;
-use crate::screen::{Column, Counts, Objective};
+use crate::screen::{Column, Counts};
 use crate::supply::Supply;
 use crate::units::Money;
 
-/// Columns with the same floored heat come by cost, so the next one may be cooler by less than this, in microwatts.
-const HEAT_ROUNDING: i64 = 1;
+/// How a run over all combinations ended.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub(super) enum Run {
+    /// Everything up to the reach was looked at.
+    Whole,
+    /// Told to stop.
+    Stopped,
+    /// Out of nodes.
+    OutOfNodes,
+}
 
 /// One run over all combinations.
 pub(super) struct Combine<'a, 'c> {
     question: &'a Question<'c>,
     ready: &'a [&'a [Ready<'c>]],
-    /// By rail: columns that may take part, with their least share of the objective, rising.
-    kept: &'a [Vec<(usize, i64)>],
+    /// Columns that may take part.
+    pool: &'a Pool,
     best: &'a mut Best<'c>,
     counts: &'a mut Counts,
     reach: i64,
     /// Rails in the order in which they are decided.
     order: Vec<usize>,
-    /// Behind each depth: least cost and heat of the rails not yet decided.
-    rest: Vec<(i64, f64)>,
+    /// Behind each depth: least cost, heat and score of the rails not yet decided.
+    rest: Vec<(i64, f64, f64)>,
     /// Behind each depth, by part: most pieces that the undecided rails can add.
     addable: Vec<Vec<u64>>,
     pieces: Vec<u64>,
     chosen: Vec<usize>,
-    stopped: bool,
+    /// Nodes at which the run gives up.
+    last_node: u64,
+    ended: Option<Run>,
 }
 
 impl<'a, 'c> Combine<'a, 'c> {
     pub(super) fn new(
         question: &'a Question<'c>,
         ready: &'a [&'a [Ready<'c>]],
-        kept: &'a [Vec<(usize, i64)>],
+        pool: &'a Pool,
         best: &'a mut Best<'c>,
         counts: &'a mut Counts,
         parts: usize,
         reach: i64,
     ) -> Self {
         let mut order: Vec<usize> = (0..ready.len()).collect();
-        order.sort_by_key(|&rail| (kept[rail].len(), rail));
-        let mut rest = vec![(0, 0.0); order.len() + 1];
+        order.sort_by_key(|&rail| (pool.by_rail[rail].len(), rail));
+        let mut rest = vec![(0, 0.0, 0.0); order.len() + 1];
         let mut addable = vec![vec![0; parts]; order.len() + 1];
         for depth in (0..order.len()).rev() {
             let rail = order[depth];
-            let columns = || kept[rail].iter().map(|&(place, floor)| (&ready[rail][place], floor));
-            let cost = match question.objective {
-                Objective::Cost => columns().map(|(_, floor)| floor).min(),
-                Objective::Heat => columns().map(|(r, _)| r.column.floor_cost.0).min(),
-            };
-            let heat = columns().map(|(r, _)| r.heat_w).fold(f64::INFINITY, f64::min);
-            rest[depth] = (rest[depth + 1].0 + cost.unwrap_or(0), rest[depth + 1].1 + heat);
+            let kept = &pool.by_rail[rail];
+            let columns = || kept.iter().map(|k| &ready[rail][k.place]);
+            let cost = kept.iter().map(|k| k.floor).min().unwrap_or(0);
+            let heat = columns().map(|r| r.heat_w).fold(f64::INFINITY, f64::min);
+            let score = kept.first().map_or(0.0, |k| k.score);
+            let (behind_cost, behind_heat, behind_score) = rest[depth + 1];
+            rest[depth] = (behind_cost + cost, behind_heat + heat, behind_score + score);
             let mut most = vec![0; parts];
-            for &(part, pieces) in columns().flat_map(|(r, _)| &r.lines) {
+            for &(part, pieces) in columns().flat_map(|r| &r.lines) {
                 let most = &mut most[part.id.0 as usize];
                 *most = pieces.max(*most);
             }
@@ -66,7 +77,7 @@ impl<'a, 'c> Combine<'a, 'c> {
         Combine {
             question,
             ready,
-            kept,
+            pool,
             best,
             counts,
             reach,
@@ -75,14 +86,16 @@ impl<'a, 'c> Combine<'a, 'c> {
             rest,
             addable,
             pieces: vec![0; parts],
-            stopped: false,
+            last_node: u64::MAX,
+            ended: None,
         }
     }
 
-    /// Whether it came to its end.
-    pub(super) fn all(&mut self) -> bool {
+    /// Looks at everything up to the reach, within a budget of nodes.
+    pub(super) fn run(&mut self, budget: u64) -> Run {
+        self.last_node = self.counts.nodes.saturating_add(budget);
         self.decide(0, 0, 0.0, &mut Vec::new());
-        !self.stopped
+        self.ended.unwrap_or(Run::Whole)
     }
 
     fn supply(&self) -> &'c Supply {
@@ -93,26 +106,26 @@ impl<'a, 'c> Combine<'a, 'c> {
     fn decide(&mut self, depth: usize, cost: i64, heat_w: f64, used: &mut Vec<&'c Part>) {
         let objective = self.question.objective;
         let rail = self.order[depth];
-        let (rest_cost, rest_heat) = self.rest[depth + 1];
-        for &(place, floor) in &self.kept[rail] {
+        let (rest_cost, rest_heat, rest_score) = self.rest[depth + 1];
+        let decided = self.pool.score(objective, cost, heat_w);
+        for &Kept { place, floor, score } in &self.pool.by_rail[rail] {
             self.counts.nodes += 1;
             if self.counts.nodes.is_multiple_of(4096) && self.question.stop.now() {
-                self.stopped = true;
+                self.ended = Some(Run::Stopped);
+            } else if self.counts.nodes > self.last_node {
+                self.ended = Some(Run::OutOfNodes);
             }
-            if self.stopped {
+            if self.ended.is_some() {
                 return;
+            }
+            // Scores rise, so what is beyond the limit stays so.
+            if decided + score + rest_score > self.pool.limit(self.limit()) {
+                break;
             }
             let ready = &self.ready[rail][place];
             let heat_w = heat_w + ready.heat_w;
             let least_heat = heat_bound(heat_w + rest_heat);
-            let least = match objective {
-                Objective::Cost => (cost + floor + rest_cost, least_heat),
-                Objective::Heat => (least_heat, cost + ready.column.floor_cost.0 + rest_cost),
-            };
-            // Columns rise in the first part, so what is beyond reach stays so.
-            if least.0 > self.limit().saturating_add(HEAT_ROUNDING) {
-                break;
-            }
+            let least = objective.order(cost + floor + rest_cost, least_heat);
             // A hair less than the sum, which the audit adds up in another order.
             let cool = whole::heat(self.supply(), Ok((heat_w + rest_heat) * (1.0 - 1e-12))).is_none_or(|c| c.met());
             if self.beyond(least) || !cool {
@@ -146,7 +159,7 @@ impl<'a, 'c> Combine<'a, 'c> {
 
     /// Whether nothing with such a bound can enter the list in this run.
     fn beyond(&self, least: (i64, i64)) -> bool {
-        least.0 > self.reach.saturating_add(HEAT_ROUNDING) || self.best.worst().is_some_and(|worst| least > worst)
+        least.0 > self.reach || self.best.worst().is_some_and(|worst| least > worst)
     }
 
     /// Adds a column's pieces; whether the stock still allows them.
@@ -185,8 +198,26 @@ impl<'a, 'c> Combine<'a, 'c> {
         &self.ready[rail][self.chosen[rail]]
     }
 
-    /// A complete choice that no limit speaks against.
-    fn offer(&mut self, cost: Money, used: &[&'c Part]) {
+    /// Offers one choice of kept columns (by place in the pool), whoever made it, if stock and caps allow it; returns its
+    /// objective.
+    pub(super) fn offer_choice(&mut self, choice: &[usize]) -> Option<i64> {
+        let mut used = Vec::new();
+        let mut stocked = true;
+        for (rail, &at) in choice.iter().enumerate() {
+            let place = self.pool.by_rail[rail][at].place;
+            self.chosen[rail] = place;
+            stocked &= self.take(&self.ready[rail][place], &mut used);
+        }
+        let cost = self.priced(self.order.len(), &used) + self.fitted(self.order.len());
+        if !stocked || !whole::cost(self.supply(), cost).is_none_or(|c| c.met()) {
+            return None;
+        }
+        self.offer(cost, &used)
+            .map(|heat| self.question.objective.order(cost.0, heat).0)
+    }
+
+    /// A complete choice that no other limit speaks against; returns its heat as compared if the cap allows it.
+    fn offer(&mut self, cost: Money, used: &[&'c Part]) -> Option<i64> {
         let columns: Vec<&Column<'c>> = (0..self.order.len()).map(|rail| &self.at(rail).column).collect();
         let heat_w = total_w(
             (columns.iter().map(|c| c.core_w))
@@ -194,11 +225,12 @@ impl<'a, 'c> Combine<'a, 'c> {
                 .chain(columns.iter().map(|c| c.pass_w)),
         );
         if !whole::heat(self.supply(), Ok(heat_w)).is_none_or(|c| c.met()) {
-            return;
+            return None;
         }
         let mut bill: Bill = used.iter().map(|p| (p.id, self.pieces[p.id.0 as usize])).collect();
         bill.sort_unstable();
         self.best.offer(bill, cost.0, compared(heat_w), || build_of(&columns));
+        Some(compared(heat_w))
     }
 }
 

@@ -6,6 +6,7 @@ mod best;
 mod columns;
 mod combine;
 mod milp;
+mod pool;
 mod search;
 mod tighten;
 
@@ -40,7 +41,12 @@ pub struct Question<'c> {
     pub with: Vec<(PartId, Option<usize>)>,
     /// When to give up.
     pub stop: Stop,
+    /// Nodes of one round of the search after which the integer program is asked; [`NODE_BUDGET`].
+    pub node_budget: u64,
 }
+
+/// A few seconds of search: what is not settled by then is better proved by an integer program.
+pub const NODE_BUDGET: u64 = 20_000_000;
 
 /// How far the proof came.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -83,6 +89,32 @@ pub fn optimise<'c>(question: &Question<'c>) -> Result<Outcome<'c>, Disagreement
     let mut best = Best::new(question.objective, question.top);
     let mut counts = Counts::default();
     let mut open: Option<i64> = None;
+    if question.top == 1 && capped_elsewhere(question) {
+        // The best build by the other objective is the first that the cap can allow: none there, none at all.
+        let objective = match question.objective {
+            Objective::Cost => Objective::Heat,
+            Objective::Heat => Objective::Cost,
+        };
+        let mut supply = question.supply.clone();
+        match objective {
+            Objective::Heat => supply.caps.cost = None,
+            Objective::Cost => supply.caps.heat_w = None,
+        }
+        let other = Question {
+            supply: &supply,
+            objective,
+            ..question.clone()
+        };
+        let first = optimise(&other)?;
+        counts = first.counts;
+        if first.builds.is_empty() && first.proof == Proof::Proved {
+            return Ok(Outcome {
+                builds: Vec::new(),
+                proof: Proof::Proved,
+                counts,
+            });
+        }
+    }
     for in_rail in placements(question) {
         let must = Must {
             without: question.without.clone(),
@@ -109,6 +141,14 @@ pub fn optimise<'c>(question: &Question<'c>) -> Result<Outcome<'c>, Disagreement
         }
     };
     Ok(Outcome { builds, proof, counts })
+}
+
+/// Whether a cap binds what the objective does not minimise.
+fn capped_elsewhere(question: &Question) -> bool {
+    match question.objective {
+        Objective::Cost => question.supply.caps.heat_w.is_some(),
+        Objective::Heat => question.supply.caps.cost.is_some(),
+    }
 }
 
 /// The full audit of a build that is about to leave.

@@ -7,14 +7,21 @@
 use super::Question;
 use super::best::Best;
 use super::columns::{RailColumns, Ready};
-use super::combine::Combine;
+use super::combine::{Combine, Run};
+use super::milp::{Answer, Solver, least as least_by_solver};
+use super::pool::Pool;
 use super::tighten::tighten;
 use crate::audit::{Site, whole};
-use crate::screen::{Counts, Must, Objective};
+use crate::screen::{Column, Counts, Must, Objective};
 use crate::units::Money;
 
 /// T starts at the least that any build can have and first rises by this share of it, then by twice as much each time.
 const FIRST_STEP: i64 = 64;
+
+/// Columns beyond which the solver's memory grows past reason.
+const MOST_SOLVER_COLUMNS: usize = 5_000;
+/// Longest time for one solver call.
+const SOLVER_SECONDS: f64 = 30.0;
 
 /// How a search ended.
 pub(super) enum End {
@@ -47,7 +54,8 @@ pub(super) fn search<'c>(
     let base: i64 = least.iter().sum();
     let parts = question.catalogue.parts().count();
     let mut passed = base - 1;
-    let mut reach = base;
+    // Heats are floored rail by rail and rounded in the sum: the first reach covers the difference.
+    let mut reach = base + i64::try_from(rails.len()).unwrap_or(0);
     let mut step = (base / FIRST_STEP).max(1);
     loop {
         if let Some(worst) = best.worst() {
@@ -61,10 +69,26 @@ pub(super) fn search<'c>(
             Objective::Cost => tighten(&ready, parts, question.supply.builds, reach),
             Objective::Heat => ready
                 .iter()
-                .map(|r| (0..r.len()).map(|i| (i, r[i].key.0)).collect())
+                .map(|r| (0..r.len()).map(|i| (i, r[i].column.floor_cost.0)).collect())
                 .collect(),
         };
-        if stop.now() || !Combine::new(question, &ready, &kept, best, counts, parts, reach).all() {
+        let pool = Pool::new(question, &ready, kept, reach);
+        if stop.now() {
+            return End::Stopped { bound: passed + 1 };
+        }
+        let mut run = Combine::new(question, &ready, &pool, best, counts, parts, reach).run(question.node_budget);
+        if run == Run::OutOfNodes {
+            run = match ask_solver(question, &ready, &pool, best, counts, parts, reach) {
+                // What remains is to settle ties up to that build, or the solver has shown that there is none.
+                Said::Least(value) => {
+                    passed = passed.max(value - 1);
+                    Combine::new(question, &ready, &pool, best, counts, parts, value).run(u64::MAX)
+                }
+                Said::NothingWithinReach => Run::Whole,
+                Said::Nothing => Combine::new(question, &ready, &pool, best, counts, parts, reach).run(u64::MAX),
+            };
+        }
+        if run != Run::Whole {
             return End::Stopped { bound: passed + 1 };
         }
         passed = reach;
@@ -79,6 +103,51 @@ pub(super) fn search<'c>(
             _ => return End::Complete,
         }
         step *= 2;
+    }
+}
+
+/// What the integer program says about one round.
+enum Said {
+    /// The least objective, within reach.
+    Least(i64),
+    /// No build within reach.
+    NothingWithinReach,
+    /// It could not tell.
+    Nothing,
+}
+
+/// Asks the solver for the best combination of the kept columns; only for the single best, which is all it can prove.
+fn ask_solver<'c>(
+    question: &Question<'c>,
+    ready: &[&[Ready<'c>]],
+    pool: &Pool,
+    best: &mut Best<'c>,
+    counts: &mut Counts,
+    parts: usize,
+    reach: i64,
+) -> Said {
+    if question.top > 1 || pool.by_rail.iter().map(Vec::len).sum::<usize>() > MOST_SOLVER_COLUMNS {
+        return Said::Nothing;
+    }
+    let columns: Vec<Vec<Column<'c>>> = (ready.iter().zip(&pool.by_rail))
+        .map(|(ready, kept)| kept.iter().map(|k| ready[k.place].column.clone()).collect())
+        .collect();
+    let left = question.stop.deadline.map_or(SOLVER_SECONDS, |at| {
+        at.saturating_duration_since(std::time::Instant::now())
+            .as_secs_f64()
+            .min(SOLVER_SECONDS)
+    });
+    counts.solver_calls += 1;
+    match least_by_solver(question.supply, question.objective, &columns, Solver::MicroLp, left) {
+        Answer::Least(choice) => {
+            match Combine::new(question, ready, pool, best, counts, parts, reach).offer_choice(&choice) {
+                Some(value) if value <= reach => Said::Least(value),
+                Some(_) => Said::NothingWithinReach,
+                None => Said::Nothing,
+            }
+        }
+        Answer::Infeasible => Said::NothingWithinReach,
+        Answer::Undecided(_) => Said::Nothing,
     }
 }
 

@@ -83,6 +83,7 @@ pub struct Walk<'s, 'c> {
     by_price: Vec<(usize, i64)>,
     /// Lower bound of every open entry; the entry itself makes the order total.
     heap: BinaryHeap<Reverse<((i64, i64), Entry)>>,
+    steps: u64,
 }
 
 impl<'s, 'c> Walk<'s, 'c> {
@@ -104,6 +105,7 @@ impl<'s, 'c> Walk<'s, 'c> {
             stacks: Vec::new(),
             by_price: Vec::new(),
             heap: BinaryHeap::new(),
+            steps: 0,
             shelf: reach.shelf,
             prices,
         };
@@ -144,10 +146,9 @@ impl<'s, 'c> Walk<'s, 'c> {
     /// The next column whose key can be at most `most` in its first part; `None` when none is left below, or when told
     /// to stop.
     pub fn next(&mut self, most: i64, stop: &Stop, counts: &mut Counts) -> Option<(Column<'c>, (i64, i64))> {
-        let mut steps = 0_u32;
         while let Some(&Reverse((key, entry))) = self.heap.peek() {
-            steps += 1;
-            if key.0 > most || (steps.is_multiple_of(256) && stop.now()) {
+            self.steps += 1;
+            if key.0 > most || (self.steps.is_multiple_of(256) && stop.now()) {
                 return None;
             }
             self.heap.pop();
