@@ -13,7 +13,7 @@
 use std::f64::consts::{FRAC_PI_2, PI, SQRT_2};
 
 use super::root::falling;
-use super::stretch::{Integrals, Sum};
+use super::stretch::{Basis, Integrals, Sum};
 
 /// Everything that the steady state depends on.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -57,6 +57,8 @@ struct Pulse {
     length: f64,
     /// Decay of the exponential part, per radian.
     decay: f64,
+    /// Slope at the start, per radian, of the capacitor voltage at which current would start.
+    rise: f64,
     /// Source current.
     current: Sum,
     /// Capacitor voltage.
@@ -192,11 +194,11 @@ impl<'a> Solver<'a> {
                 length: end - start,
                 ..self.opened(start)
             };
-            let (balance, slope) = self.balance(start, &pulse);
-            let kept = (-pulse.decay * pulse.length).exp();
-            let current = pulse.current.at(pulse.length, pulse.decay);
-            let current_slope = pulse.current.slopes(pulse.length, pulse.decay).0;
-            let by_start = -kept * pulse.current.slope_at_start(pulse.decay);
+            let at_end = Basis::new(pulse.length, pulse.decay);
+            let (balance, slope) = self.balance(&pulse, &at_end);
+            let current = pulse.current.at(&at_end);
+            let current_slope = pulse.current.slopes(&at_end).0;
+            let by_start = -(1.0 + at_end.exp) * pulse.current.slope_at_start(pulse.decay);
             let start_step = -balance / slope;
             let end_step = -(current + by_start * start_step) / current_slope;
             let settled = start_step.abs() <= SETTLED_RAD && end_step.abs() <= SETTLED_RAD;
@@ -224,33 +226,32 @@ impl<'a> Solver<'a> {
     /// Charge balance of a period that starts to conduct at `start`, as a capacitor voltage: after minus before; and
     /// its slope. Falls with `start`. Below zero also when the voltage cannot even be held up during the pulse.
     fn surplus(&self, start: f64) -> (f64, f64) {
-        self.pulse(start)
-            .map_or((-self.crest, -self.crest), |pulse| self.balance(start, &pulse))
+        self.pulse(start).map_or((-self.crest, -self.crest), |pulse| {
+            self.balance(&pulse, &Basis::new(pulse.length, pulse.decay))
+        })
     }
 
     /// The same for a pulse whose length is known.
-    fn balance(&self, start: f64, pulse: &Pulse) -> (f64, f64) {
+    fn balance(&self, pulse: &Pulse, at_end: &Basis) -> (f64, f64) {
         let before = pulse.stored.one;
-        let rise = self.spread * self.crest * start.cos();
         let rest = self.period - pulse.length;
         // Gain and loss apart from the voltage itself: their difference keeps its digits when the ripple is tiny.
         let gain = Sum {
             one: 0.0,
             ..pulse.stored
         }
-        .at(pulse.length, pulse.decay);
+        .at(at_end);
         let loss = self.discharge(before + gain, rest);
         let after = before + gain - loss;
         let leak_before = -self.load_slope(before);
         let leak_after = -self.load_slope(after);
-        let kept = (-self.off_decay * rest).exp()
-            * if self.loop_ohm > 0.0 {
-                (-pulse.decay * pulse.length).exp()
-            } else {
-                // The clamp forgets the start: what is kept hangs on the end angle, which does not move.
-                0.0
-            };
-        (gain - loss, kept * (rise - leak_before) + leak_after - rise)
+        // The clamp of a section without resistance forgets the start: what is kept hangs on its end, which stays.
+        let kept = if self.loop_ohm > 0.0 {
+            (-self.off_decay * rest).exp() * (1.0 + at_end.exp)
+        } else {
+            0.0
+        };
+        (gain - loss, kept * (pulse.rise - leak_before) + leak_after - pulse.rise)
     }
 
     /// Rate per radian at which the load alone lowers a capacitor voltage.
@@ -302,6 +303,7 @@ impl<'a> Solver<'a> {
             Pulse {
                 length: 0.0,
                 decay: a,
+                rise: self.spread * self.crest * cos,
                 current,
                 stored,
                 raw,
@@ -319,6 +321,7 @@ impl<'a> Solver<'a> {
             Pulse {
                 length: 0.0,
                 decay: 0.0,
+                rise: self.spread * self.crest * cos,
                 current,
                 stored: source,
                 raw: source,
@@ -331,7 +334,7 @@ impl<'a> Solver<'a> {
     fn pulse(&self, start: f64) -> Option<Pulse> {
         let pulse = self.opened(start);
         let longest = PI - start;
-        if pulse.current.at(longest, pulse.decay) > 0.0 {
+        if pulse.current.at(&Basis::new(longest, pulse.decay)) > 0.0 {
             return None;
         }
         let length = if self.loop_ohm > 0.0 {
@@ -340,12 +343,14 @@ impl<'a> Solver<'a> {
                 if x <= 0.0 {
                     return (pulse.current.slope_at_start(pulse.decay), -1.0);
                 }
-                let value = pulse.current.at(x, pulse.decay) / x;
-                (value, (pulse.current.slopes(x, pulse.decay).0 - value) / x)
+                let here = Basis::new(x, pulse.decay);
+                let value = pulse.current.at(&here) / x;
+                (value, (pulse.current.slopes(&here).0 - value) / x)
             })
         } else {
             falling(0.0, longest, FRAC_PI_2 - start, 0.0, |x| {
-                (pulse.current.at(x, 0.0), pulse.current.slopes(x, 0.0).0)
+                let here = Basis::new(x, 0.0);
+                (pulse.current.at(&here), pulse.current.slopes(&here).0)
             })
         };
         Some(Pulse { length, ..pulse })
@@ -362,19 +367,19 @@ impl Waveform {
         }
         // The voltage rises where the current crests; the middle of the pulse mostly shows it, and saves that root.
         let middle = 0.5 * p.length;
-        let rising = if p.raw.slopes(middle, p.decay).0 > 0.0 {
+        let rising = if p.raw.slopes(&p.point(middle)).0 > 0.0 {
             middle
         } else {
             p.crest_at()
         };
-        p.raw.one.min(p.raw.at(p.flat(p.raw, 0.0, rising, -1.0), p.decay))
+        p.raw.one.min(p.raw.at(&p.point(p.flat(p.raw, 0.0, rising, -1.0))))
     }
 
     /// Highest raw voltage.
     #[must_use]
     pub fn peak_v(&self) -> f64 {
         let Some(p) = &self.pulse else { return self.open_v() };
-        p.raw.at(p.flat(p.raw, p.crest_at(), p.length, 1.0), p.decay)
+        p.raw.at(&p.point(p.flat(p.raw, p.crest_at(), p.length, 1.0)))
     }
 
     /// Peak-to-peak ripple of the raw voltage.
@@ -413,7 +418,7 @@ impl Waveform {
     /// Its crest.
     #[must_use]
     pub fn source_peak_a(&self) -> f64 {
-        self.pulse.map_or(0.0, |p| p.current.at(p.crest_at(), p.decay))
+        self.pulse.map_or(0.0, |p| p.current.at(&p.point(p.crest_at())))
     }
 
     /// Rms current in the bank.
@@ -454,8 +459,12 @@ impl Waveform {
 }
 
 impl Pulse {
+    fn point(&self, x: f64) -> Basis {
+        Basis::new(x, self.decay)
+    }
+
     fn stored_at_end(&self) -> f64 {
-        self.stored.at(self.length, self.decay)
+        self.stored.at(&self.point(self.length))
     }
 
     /// Where the current is highest.
@@ -470,7 +479,7 @@ impl Pulse {
     /// Where a quantity stops to rise (`sign` 1) or to fall (-1) between two angles after the start.
     fn flat(&self, quantity: Sum, low: f64, high: f64, sign: f64) -> f64 {
         falling(low, high, 0.5 * (low + high), SETTLED_RAD, |x| {
-            let (first, second) = quantity.slopes(x, self.decay);
+            let (first, second) = quantity.slopes(&Basis::new(x, self.decay));
             (sign * first, sign * second)
         })
     }

@@ -24,22 +24,45 @@ impl Sum {
         }
     }
 
-    /// Value at angle x after the start, for decay `a` per radian.
-    pub(super) fn at(&self, x: f64, a: f64) -> f64 {
-        let (s, half) = (x.sin(), (0.5 * x).sin());
-        self.one + self.sin * s - self.cos * 2.0 * half * half + self.exp * (-a * x).exp_m1()
+    /// Value at a point of the stretch.
+    pub(super) fn at(&self, x: &Basis) -> f64 {
+        self.one + self.sin * x.sin + self.cos * x.cos + self.exp * x.exp
     }
 
-    /// Slope and second derivative per radian at x.
-    pub(super) fn slopes(&self, x: f64, a: f64) -> (f64, f64) {
-        let (s, c) = x.sin_cos();
-        let e = self.exp * a * (-a * x).exp();
-        (self.sin * c - self.cos * s - e, -self.sin * s - self.cos * c + a * e)
+    /// Slope and second derivative per radian there.
+    pub(super) fn slopes(&self, x: &Basis) -> (f64, f64) {
+        let (cos, decayed) = (1.0 + x.cos, self.exp * x.decay * (1.0 + x.exp));
+        (
+            self.sin * cos - self.cos * x.sin - decayed,
+            x.decay * decayed - self.sin * x.sin - self.cos * cos,
+        )
     }
 
     /// Slope per radian at the start, without the cancellation of [`Sum::slopes`].
     pub(super) fn slope_at_start(&self, a: f64) -> f64 {
         self.sin - a * self.exp
+    }
+}
+
+/// The basis at one point: sin x, cos x - 1, e^(-ax) - 1.
+#[derive(Debug, Clone, Copy)]
+pub(super) struct Basis {
+    sin: f64,
+    cos: f64,
+    pub(super) exp: f64,
+    decay: f64,
+}
+
+impl Basis {
+    /// At angle x after the start, for decay `a` per radian.
+    pub(super) fn new(x: f64, a: f64) -> Basis {
+        let (s, c) = (0.5 * x).sin_cos();
+        Basis {
+            sin: 2.0 * s * c,
+            cos: -2.0 * s * s,
+            exp: (-a * x).exp_m1(),
+            decay: a,
+        }
     }
 }
 
