@@ -41,9 +41,11 @@ pub(super) fn search<'c>(
 ) -> End {
     let stop = &question.stop;
     let mut rails = RailColumns::start(site, question, must, counts);
-    let mut least = Vec::new();
-    for rail in &mut rails {
+    on_every_rail(&mut rails, counts, |_, rail, counts| {
         rail.one_more(i64::MAX, stop, counts);
+    });
+    let mut least = Vec::new();
+    for rail in &rails {
         match rail.ready.first() {
             Some(first) => least.push(first.key.0),
             // Whoever stopped the walk before its first column has proved nothing.
@@ -61,9 +63,9 @@ pub(super) fn search<'c>(
         if let Some(worst) = best.worst() {
             reach = reach.min(worst.0.max(base));
         }
-        for (rail, least) in rails.iter_mut().zip(&least) {
-            rail.extend(reach - (base - least), stop, counts);
-        }
+        on_every_rail(&mut rails, counts, |place, rail, counts| {
+            rail.extend(reach - (base - least[place]), stop, counts);
+        });
         let ready: Vec<&[Ready]> = rails.iter().map(|rail| rail.ready.as_slice()).collect();
         let kept = match question.objective {
             Objective::Cost => tighten(&ready, parts, question.supply.builds, reach),
@@ -104,6 +106,32 @@ pub(super) fn search<'c>(
         }
         step *= 2;
     }
+}
+
+/// Works on every rail in a thread of its own: rails know nothing of each other, and the counts add up to the same
+/// whatever the machine. A thread that panics takes the program with it, since its columns would be missing.
+fn on_every_rail<'s, 'c>(
+    rails: &mut [RailColumns<'s, 'c>],
+    counts: &mut Counts,
+    work: impl Fn(usize, &mut RailColumns<'s, 'c>, &mut Counts) + Sync,
+) {
+    let work = &work;
+    std::thread::scope(|scope| {
+        let spawn = |(place, rail)| {
+            scope.spawn(move || {
+                let mut counts = Counts::default();
+                work(place, rail, &mut counts);
+                counts
+            })
+        };
+        let threads: Vec<_> = rails.iter_mut().enumerate().map(spawn).collect();
+        for thread in threads {
+            match thread.join() {
+                Ok(done) => counts.add(&done),
+                Err(panic) => std::panic::resume_unwind(panic),
+            }
+        }
+    });
 }
 
 /// What the integer program says about one round.

@@ -1,6 +1,6 @@
 //! Owns a column: one rail's section and device, complete with sinks.
 
-use std::rc::Rc;
+use std::sync::Arc;
 
 use crate::build::{Hookup, pieces_of_rectifier};
 use crate::catalogue::{Part, PassDevice, Rectifier, Reservoir, Sink, Transformer};
@@ -13,7 +13,7 @@ pub struct Column<'c> {
     /// Transformer.
     pub transformer: &'c Transformer,
     /// Its secondaries in use.
-    pub hookup: Rc<Hookup>,
+    pub hookup: Arc<Hookup>,
     /// Rectifier circuit.
     pub path: Path,
     /// Rectifier.

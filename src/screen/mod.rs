@@ -8,13 +8,16 @@ mod column;
 mod prices;
 mod reach;
 mod shelf;
+mod solved;
+mod stop;
 mod walk;
 
 pub use column::Column;
 pub use prices::FloorPrices;
 pub use reach::Reach;
 pub use shelf::{Must, Shelf};
-pub use walk::{Stop, Walk};
+pub use stop::Stop;
+pub use walk::Walk;
 
 /// What is to be least.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -60,4 +63,16 @@ pub struct Counts {
     pub nodes: u64,
     /// Runs of the integer-programming solver.
     pub solver_calls: u64,
+}
+
+impl Counts {
+    /// Adds another worker's counts.
+    pub fn add(&mut self, other: &Counts) {
+        self.sources += other.sources;
+        self.sections += other.sections;
+        self.solves += other.solves;
+        self.columns += other.columns;
+        self.nodes += other.nodes;
+        self.solver_calls += other.solver_calls;
+    }
 }

@@ -1,7 +1,7 @@
 //! Owns how far a rail's shelf reaches: the hook-ups that can feed it at all, and how many pieces of each part it can
 //! use at most.
 
-use std::rc::Rc;
+use std::sync::Arc;
 
 use super::bounds::{least_rms_a, source_reaches};
 use super::shelf::Shelf;
@@ -15,13 +15,15 @@ use crate::supply::Path;
 /// One transformer hook-up with a path.
 pub(super) struct Source<'c> {
     pub(super) transformer: &'c Transformer,
-    pub(super) hookup: Rc<Hookup>,
+    pub(super) hookup: Arc<Hookup>,
     pub(super) path: Path,
     /// Unloaded raw voltage at high mains.
     pub(super) idle_v: f64,
     pub(super) core_w: f64,
     /// Devices whose input ratings hold on it, as places in the shelf, least load first.
     pub(super) stages: Vec<usize>,
+    /// The same, cheapest first; settled once prices are known.
+    pub(super) by_price: Vec<usize>,
 }
 
 /// A rail's shelf with the hook-ups that can feed it.
@@ -128,7 +130,7 @@ fn sources<'c>(site: &Site<'c>, shelf: &Shelf<'c>) -> Vec<Source<'c>> {
     let mut found = Vec::new();
     for &transformer in &shelf.transformers {
         for hookup in hookups(transformer) {
-            let hookup = Rc::new(hookup);
+            let hookup = Arc::new(hookup);
             let idle_v = site.idle_v(transformer, &hookup);
             for &path in site.supply.rails[shelf.rail]
                 .paths
@@ -137,11 +139,12 @@ fn sources<'c>(site: &Site<'c>, shelf: &Shelf<'c>) -> Vec<Source<'c>> {
             {
                 let mut source = Source {
                     transformer,
-                    hookup: Rc::clone(&hookup),
+                    hookup: Arc::clone(&hookup),
                     path,
                     idle_v,
                     core_w: core_w(site, transformer),
                     stages: Vec::new(),
+                    by_price: Vec::new(),
                 };
                 source.stages = (0..shelf.stages.len())
                     .filter(|&i| feeds(site, &source, &shelf.stages[i]))

@@ -1,46 +1,27 @@
 //! Owns the walk over one rail's combinations, best first: raw sections are solved on demand, columns come out in the
 //! order of their least possible key.
 //!
-//! Four kinds of entry share one heap, each with a lower bound on the key of all that may still come of it: a pair
-//! (source, rectifier) not yet opened; an opened pair with the next of its banks; a solved section with the next sink
-//! for one of its devices. So nothing is solved that is dearer (or hotter) than the answer.
+//! Entries share one heap, each with a lower bound on the key of all that may still come of it: a pair (source,
+//! rectifier) not yet opened; an opened pair with the next of its banks; a section with the next of its devices; a
+//! solved section and device with the next sink. So nothing is solved that is dearer (or hotter) than the answer.
 
 use std::cmp::Reverse;
 use std::collections::BinaryHeap;
-use std::rc::Rc;
 use std::sync::Arc;
-use std::sync::atomic::{AtomicBool, Ordering};
-use std::time::Instant;
 
 use super::bounds::{least_bank_f, least_rms_a, source_reaches};
 use super::column::Column;
 use super::prices::FloorPrices;
 use super::reach::{Reach, Source, bare_circuit, carries};
 use super::shelf::{Bank, Shelf};
+use super::solved::{Losses, Solved};
+use super::stop::Stop;
 use super::{Counts, Objective};
-use crate::audit::{Check, Corner, Known, NoWave, Raw, SectionHeat, Site, Stage, rectifier, reservoir, whole};
+use crate::audit::{Check, Corner, Known, Raw, SectionHeat, Site, Stage, rectifier, reservoir, whole};
 use crate::build::{pieces_of_rectifier, sink_takes};
 use crate::catalogue::{Rectifier, RectifierKind, Sink};
-use crate::physics::raw_section::Waveform;
 use crate::physics::winding::WindingLoad;
 use crate::units::Money;
-
-/// When to give up: a deadline, or a signal from the user.
-#[derive(Debug, Clone, Default)]
-pub struct Stop {
-    /// Wall clock to stop at.
-    pub deadline: Option<Instant>,
-    /// Set by Ctrl-C.
-    pub asked: Arc<AtomicBool>,
-}
-
-impl Stop {
-    /// Whether to give up now.
-    #[must_use]
-    pub fn now(&self) -> bool {
-        self.asked.load(Ordering::Relaxed) || self.deadline.is_some_and(|at| Instant::now() >= at)
-    }
-}
 
 /// A source with a rectifier; its banks once opened.
 struct Pair {
@@ -48,6 +29,18 @@ struct Pair {
     rectifier: usize,
     /// Bank and lower bound of the key of all that comes of it, rising.
     banks: Vec<(usize, (i64, i64))>,
+}
+
+/// A section that some device may stand behind.
+struct Section {
+    pair: usize,
+    bank: usize,
+    /// Least cost without the device.
+    cost: i64,
+    /// Least heat.
+    heat: i64,
+    /// Its steady states by load.
+    solved: Vec<Solved>,
 }
 
 /// A solved section with one device and one rectifier sink: only the pass sink is open.
@@ -61,6 +54,7 @@ struct Stack<'c> {
 enum Entry {
     Pair(usize),
     Bank(usize, usize),
+    Device(usize, usize),
     Stack(usize, usize),
 }
 
@@ -78,6 +72,7 @@ pub struct Walk<'s, 'c> {
     prices: FloorPrices,
     sources: Vec<Source<'c>>,
     pairs: Vec<Pair>,
+    sections: Vec<Section>,
     stacks: Vec<Stack<'c>>,
     /// Banks by least price.
     by_price: Vec<(usize, i64)>,
@@ -102,6 +97,7 @@ impl<'s, 'c> Walk<'s, 'c> {
             objective,
             sources,
             pairs: Vec::new(),
+            sections: Vec::new(),
             stacks: Vec::new(),
             by_price: Vec::new(),
             heap: BinaryHeap::new(),
@@ -110,6 +106,11 @@ impl<'s, 'c> Walk<'s, 'c> {
             prices,
         };
         counts.sources += walk.sources.len() as u64;
+        for place in 0..walk.sources.len() {
+            let mut by_price = walk.sources[place].stages.clone();
+            by_price.sort_by_key(|&i| (walk.device_cost(&walk.shelf.stages[i]), i));
+            walk.sources[place].by_price = by_price;
+        }
         walk.by_price = (walk.shelf.banks.iter().enumerate())
             .map(|(i, bank)| (i, walk.prices.cost(&bank.can.part, u64::from(bank.cans)).0))
             .collect();
@@ -156,7 +157,11 @@ impl<'s, 'c> Walk<'s, 'c> {
                 Entry::Pair(pair) => self.open(pair, counts),
                 Entry::Bank(pair, place) => {
                     self.push_bank(pair, place + 1);
-                    self.solve(pair, place, counts);
+                    self.try_section(pair, place, counts);
+                }
+                Entry::Device(section, place) => {
+                    self.push_device(section, place + 1);
+                    self.try_device(section, place, counts);
                 }
                 Entry::Stack(stack, place) => {
                     self.push_stack(stack, place + 1);
@@ -180,16 +185,19 @@ impl<'s, 'c> Walk<'s, 'c> {
         None
     }
 
-    /// Least cost of transformer, rectifier and the cheapest device on that source.
-    fn pair_cost(&self, source: &Source, rectifier: &Rectifier) -> i64 {
+    /// Least cost of transformer and rectifier.
+    fn section_cost(&self, source: &Source, rectifier: &Rectifier) -> i64 {
         let pieces = pieces_of_rectifier(rectifier.kind, source.path);
+        (self.prices.cost(&source.transformer.part, 1) + self.prices.cost(&rectifier.part, pieces)).0
+    }
+
+    /// The same with the cheapest device on that source.
+    fn pair_cost(&self, source: &Source, rectifier: &Rectifier) -> i64 {
         let device = source
-            .stages
-            .iter()
-            .map(|&i| self.device_cost(&self.shelf.stages[i]))
-            .min()
-            .unwrap_or(0);
-        self.prices.cost(&source.transformer.part, 1).0 + self.prices.cost(&rectifier.part, pieces).0 + device
+            .by_price
+            .first()
+            .map_or(0, |&i| self.device_cost(&self.shelf.stages[i]));
+        self.section_cost(source, rectifier) + device
     }
 
     fn device_cost(&self, stage: &Stage) -> i64 {
@@ -318,84 +326,82 @@ impl<'s, 'c> Walk<'s, 'c> {
         column
     }
 
-    /// Solves one section for every device that may stand behind it, and stacks what holds.
-    fn solve(&mut self, pair: usize, place: usize, counts: &mut Counts) {
+    /// Solves one section under the least load of its devices; if there is hope, its devices come into question, the
+    /// cheapest first.
+    fn try_section(&mut self, pair: usize, place: usize, counts: &mut Counts) {
         counts.sections += 1;
-        let pair = &self.pairs[pair];
-        let bank = self.shelf.banks[pair.banks[place].0];
-        let raw = self.raw(pair, bank);
-        let source = &self.sources[pair.source];
-        let mut found: Vec<Stack<'c>> = Vec::new();
-        let mut solved: Option<Solved> = None;
+        let (bank, bank_key) = self.pairs[pair].banks[place];
+        let pair_ref = &self.pairs[pair];
+        let raw = self.raw(pair_ref, self.shelf.banks[bank]);
         if !rectifier::surge(self.site, &raw).met() {
             return;
         }
-        for (at, &place) in source.stages.iter().enumerate() {
-            let stage = &self.shelf.stages[place];
-            let Ok(load_a) = stage.load_a() else { continue };
-            // Devices come by load, so equal loads share their steady states.
+        let source = &self.sources[pair_ref.source];
+        let stages = || source.stages.iter().map(|&i| &self.shelf.stages[i]);
+        let Some(Ok(load_a)) = stages().next().map(Stage::load_a) else {
+            return;
+        };
+        let mut solved = Solved::new(load_a);
+        if !solved.hope(self.site, &raw, stages(), counts) {
+            return;
+        }
+        let can = self.shelf.banks[bank];
+        let cost = self.section_cost(source, self.shelf.rectifiers[pair_ref.rectifier])
+            + self.prices.cost(&can.can.part, u64::from(can.cans)).0;
+        // Heat with the least load, which every device exceeds or meets.
+        let heat = match self.objective {
+            Objective::Cost => bank_key.1,
+            Objective::Heat => bank_key.0,
+        };
+        self.sections.push(Section {
+            pair,
+            bank,
+            cost,
+            heat,
+            solved: vec![solved],
+        });
+        self.push_device(self.sections.len() - 1, 0);
+    }
+
+    fn push_device(&mut self, section: usize, place: usize) {
+        let open = &self.sections[section];
+        let source = &self.sources[self.pairs[open.pair].source];
+        if let Some(&device) = source.by_price.get(place) {
+            let cost = open.cost + self.device_cost(&self.shelf.stages[device]);
+            self.heap.push(Reverse((
+                self.objective.order(cost, open.heat),
+                Entry::Device(section, place),
+            )));
+        }
+    }
+
+    /// Solves one section for one device, and stacks what holds.
+    fn try_device(&mut self, section: usize, place: usize, counts: &mut Counts) {
+        let mut solved = std::mem::take(&mut self.sections[section].solved);
+        let open = &self.sections[section];
+        let pair = &self.pairs[open.pair];
+        let source = &self.sources[pair.source];
+        let stage = &self.shelf.stages[source.by_price[place]];
+        let bank = self.shelf.banks[open.bank];
+        let raw = self.raw(pair, bank);
+        let mut found = Vec::new();
+        if let Ok(load_a) = stage.load_a() {
+            // Devices with equal loads share their steady states.
             #[allow(clippy::float_cmp)]
-            if solved.as_ref().is_none_or(|s| s.load_a != load_a) {
-                let mut next = Solved::new(load_a);
-                // As the load rises, the valley falls and the source current rises at every instant: what fails here
-                // for every device left stays so.
-                let low = next.wave(self.site, &raw, Corner::Low, counts);
-                let hope = source.stages[at..]
-                    .iter()
-                    .any(|&i| self.shelf.stages[i].headroom(self.site, low).met());
-                if !hope || !feeds(&raw, load_a, next.wave(self.site, &raw, Corner::High, counts)) {
-                    break;
-                }
-                solved = Some(next);
-            }
-            let Some(solved) = &mut solved else { continue };
-            if let Some(base) = self.device_holds(&raw, source, stage, solved, counts) {
-                self.stack(pair, bank, stage, &base, &mut found);
+            let known = solved.iter().position(|s| s.load_a == load_a);
+            let at = known.unwrap_or_else(|| {
+                solved.push(Solved::new(load_a));
+                solved.len() - 1
+            });
+            if let Some(losses) = solved[at].losses(self.site, &raw, stage, counts) {
+                self.stack(pair, bank, stage, &losses, &mut found);
             }
         }
+        self.sections[section].solved = solved;
         for stack in found {
             self.stacks.push(stack);
             self.push_stack(self.stacks.len() - 1, 0);
         }
-    }
-
-    /// Everything but the junctions; the losses if it holds.
-    fn device_holds(
-        &self,
-        raw: &Raw,
-        source: &Source,
-        stage: &Stage,
-        solved: &mut Solved,
-        counts: &mut Counts,
-    ) -> Option<Losses> {
-        let site = self.site;
-        let load_a = solved.load_a;
-        let met = |check: Option<Check>| check.is_none_or(|c| c.met());
-        let low = solved.wave(site, raw, Corner::Low, counts);
-        if !stage.headroom(site, low).met() || !met(stage.ride_through(site, raw, Ok(load_a), low)) {
-            return None;
-        }
-        let (low, high) = (low.copied(), solved.wave(site, raw, Corner::High, counts).copied());
-        let high_ref = high.as_ref().map_err(|&column| column);
-        let low_ref = low.as_ref().map_err(|&column| column);
-        if solved.collapsed
-            || !*solved.lasts.get_or_insert_with(|| lasts(site, raw, high_ref))
-            || !met(stage.accuracy(low_ref, high_ref))
-        {
-            return None;
-        }
-        if stage.rail.ripple_v.is_some() {
-            let worn = solved.wave(site, raw, Corner::Worn, counts);
-            if !met(stage.ripple(low_ref, high_ref, worn)) {
-                return None;
-            }
-        }
-        Some(Losses {
-            core_w: source.core_w,
-            section_w: SectionHeat::new(site, raw, Ok(load_a), high_ref).ok()?.sum_w(),
-            package_w: rectifier::package_loss_w(site, raw, high_ref).ok()?,
-            pass_w: stage.loss_w(high_ref).ok()?,
-        })
     }
 
     /// Stacks every choice of sinks that keeps both junctions.
@@ -425,7 +431,7 @@ impl<'s, 'c> Walk<'s, 'c> {
             found.push(Stack {
                 column: Column {
                     transformer: source.transformer,
-                    hookup: Rc::clone(&source.hookup),
+                    hookup: Arc::clone(&source.hookup),
                     path: source.path,
                     rectifier,
                     rectifier_sink,
@@ -433,7 +439,7 @@ impl<'s, 'c> Walk<'s, 'c> {
                     cans: bank.cans,
                     pass: stage.device,
                     sink: None,
-                    core_w: losses.core_w,
+                    core_w: source.core_w,
                     section_w: losses.section_w,
                     pass_w: losses.pass_w,
                     floor_cost: section_cost + Money(self.device_cost(stage)) + self.sink_cost(rectifier_sink),
@@ -459,80 +465,4 @@ impl<'s, 'c> Walk<'s, 'c> {
         all.sort_by_key(|&s| (self.sink_cost(s), s.map(|s| s.part.id)));
         all
     }
-}
-
-/// Losses of a section with its device at high mains.
-struct Losses {
-    core_w: f64,
-    section_w: f64,
-    package_w: f64,
-    pass_w: f64,
-}
-
-/// The steady states of one section under one load, solved when asked for.
-struct Solved {
-    load_a: f64,
-    waves: [Option<Known<Waveform>>; 3],
-    collapsed: bool,
-    /// Whether its cans last.
-    lasts: Option<bool>,
-}
-
-impl Solved {
-    fn new(load_a: f64) -> Solved {
-        Solved {
-            load_a,
-            waves: [None; 3],
-            collapsed: false,
-            lasts: None,
-        }
-    }
-
-    /// The waveform at low, high or worn.
-    fn wave(&mut self, site: &Site, raw: &Raw, corner: Corner, counts: &mut Counts) -> Known<&Waveform> {
-        let slot = match corner {
-            Corner::Low => 0,
-            Corner::High => 1,
-            _ => 2,
-        };
-        if self.waves[slot].is_none() {
-            counts.solves += 1;
-            let own = [WindingLoad {
-                volts_v: raw.hookup.volts_v,
-                load_a: self.load_a,
-            }];
-            self.waves[slot] = Some(
-                raw.wave(site, corner, Ok(self.load_a), Ok(&own))
-                    .map_err(|why| match why {
-                        NoWave::Missing(column) => column,
-                        NoWave::Collapse(_) => {
-                            self.collapsed = true;
-                            COLLAPSED
-                        }
-                    }),
-            );
-        }
-        match &self.waves[slot] {
-            Some(Ok(wave)) => Ok(wave),
-            Some(Err(column)) => Err(column),
-            None => Err(COLLAPSED),
-        }
-    }
-}
-
-/// Stands for a waveform that does not exist; every limit that needs it then fails.
-const COLLAPSED: &str = "collapse";
-
-/// The limits of transformer and rectifier that hang on the source current at the high corner; what fails one fails it
-/// at any higher load.
-fn feeds(raw: &Raw, load_a: f64, high: Known<&Waveform>) -> bool {
-    let rms_a = high.map(Waveform::source_rms_a);
-    rectifier::current(raw, high).met() && carries(raw.transformer, raw.hookup, raw.path, rms_a, load_a)
-}
-
-/// Whether the cans last at the high corner.
-fn lasts(site: &Site, raw: &Raw, high: Known<&Waveform>) -> bool {
-    reservoir::wear(site, raw.reservoir, raw.path, reservoir::ripple_a(raw, high))
-        .iter()
-        .all(Check::met)
 }

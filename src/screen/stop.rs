@@ -1,0 +1,22 @@
+//! Owns when to give up.
+
+use std::sync::Arc;
+use std::sync::atomic::{AtomicBool, Ordering};
+use std::time::Instant;
+
+/// When to give up: a deadline, or a signal from the user.
+#[derive(Debug, Clone, Default)]
+pub struct Stop {
+    /// Wall clock to stop at.
+    pub deadline: Option<Instant>,
+    /// Set by Ctrl-C.
+    pub asked: Arc<AtomicBool>,
+}
+
+impl Stop {
+    /// Whether to give up now.
+    #[must_use]
+    pub fn now(&self) -> bool {
+        self.asked.load(Ordering::Relaxed) || self.deadline.is_some_and(|at| Instant::now() >= at)
+    }
+}
