@@ -1,6 +1,8 @@
 //! Times the main job's steps: one table, everything in the same run. `--quick` runs each step a few times only, to
 //! show that it works.
 
+#![allow(clippy::print_stdout)] // its whole purpose
+
 use std::hint::black_box;
 use std::path::Path;
 use std::time::{Duration, Instant};

@@ -91,10 +91,10 @@ pub(super) fn finish(answer: Result<Answer, Failure>, common: &Common) -> u8 {
     // Files first: a result on the screen whose file could not be written would be half an answer.
     let mut faults = Vec::new();
     if let Some((path, text)) = &answer.save {
-        faults.extend(replace(path, text, "--save").err());
+        faults.extend(replace(path, text, "--save").err().map(|fault| *fault));
     }
     if let Some(path) = &common.output {
-        faults.extend(replace(path, &answer.text, "--output").err());
+        faults.extend(replace(path, &answer.text, "--output").err().map(|fault| *fault));
     }
     if !faults.is_empty() {
         say_faults(&faults, common);
@@ -133,14 +133,14 @@ fn say(line: &str) {
 }
 
 /// Replaces a regular file whole or leaves it as it was; a symlink keeps pointing at its target.
-fn replace(path: &Path, text: &str, flag: &str) -> Result<(), Fault> {
+fn replace(path: &Path, text: &str, flag: &str) -> Result<(), Box<Fault>> {
     let fault = |problem: String| {
-        call_fault(
+        Box::new(call_fault(
             flag,
             &path.display().to_string(),
             &problem,
             "name a file in a folder that you may write to",
-        )
+        ))
     };
     let target = match path.canonicalize() {
         Ok(target) => target,

@@ -121,11 +121,20 @@ fn floor(ready: &Ready, rail: usize, uses: &[Uses], builds: u64) -> i64 {
     (parts + ready.column.pass.fitted_price).0
 }
 
+/// A part of a column that gets cheaper when others share it.
+struct Gaining<'c> {
+    part: &'c Part,
+    pieces: u64,
+    /// Cost when nobody shares it.
+    own: Money,
+    /// The rails that can share it, as (pieces, extra).
+    sharing: Vec<(u64, i64)>,
+}
+
 /// Price of a column when sharing is charged for; see the module head.
 fn shared_bound(ready: &Ready, rail: usize, uses: &[Uses], builds: u64) -> i64 {
     let mut alone = ready.column.pass.fitted_price;
-    // Parts that can gain, each with the rails that can share it as (pieces, extra).
-    let mut gaining: Vec<(&Part, u64, Money, Vec<(u64, i64)>)> = Vec::new();
+    let mut gaining: Vec<Gaining> = Vec::new();
     for &(part, pieces) in &ready.lines {
         let own = price(part, pieces, pieces, builds);
         alone = alone + own;
@@ -136,27 +145,40 @@ fn shared_bound(ready: &Ready, rail: usize, uses: &[Uses], builds: u64) -> i64 {
             .collect();
         let all: u64 = sharing.iter().map(|&(most, _)| most).sum();
         if price(part, pieces, pieces + all, builds) < own {
-            gaining.push((part, pieces, own, sharing));
+            gaining.push(Gaining {
+                part,
+                pieces,
+                own,
+                sharing,
+            });
         }
     }
     let share = i64::try_from(gaining.len()).unwrap_or(1).max(1);
     let gains: i64 = gaining
         .iter()
-        .map(|(part, pieces, own, sharing)| {
-            let gain = |more: u64, extra: i64| own.0 - price(part, *pieces, pieces + more, builds).0 - extra / share;
-            if sharing.len() > MOST_SUBSET_RAILS {
-                let least = sharing.iter().map(|&(_, extra)| extra).min().unwrap_or(0);
-                return gain(sharing.iter().map(|&(most, _)| most).sum(), least).max(0);
-            }
-            let subset = |set: u32| {
-                let within = sharing.iter().enumerate().filter(|&(k, _)| set & (1 << k) != 0);
-                let (more, extra) = within.fold((0, 0), |(more, extra), (_, &(most, e))| {
-                    (more + most, extra + e / share)
-                });
-                gain(more, extra * share)
-            };
-            (0..1_u32 << sharing.len()).map(subset).max().unwrap_or(0)
-        })
+        .map(
+            |Gaining {
+                 part,
+                 pieces,
+                 own,
+                 sharing,
+             }| {
+                let gain =
+                    |more: u64, extra: i64| own.0 - price(part, *pieces, pieces + more, builds).0 - extra / share;
+                if sharing.len() > MOST_SUBSET_RAILS {
+                    let least = sharing.iter().map(|&(_, extra)| extra).min().unwrap_or(0);
+                    return gain(sharing.iter().map(|&(most, _)| most).sum(), least).max(0);
+                }
+                let subset = |set: u32| {
+                    let within = sharing.iter().enumerate().filter(|&(k, _)| set & (1 << k) != 0);
+                    let (more, extra) = within.fold((0, 0), |(more, extra), (_, &(most, e))| {
+                        (more + most, extra + e / share)
+                    });
+                    gain(more, extra * share)
+                };
+                (0..1_u32 << sharing.len()).map(subset).max().unwrap_or(0)
+            },
+        )
         .sum();
     alone.0 - gains
 }

@@ -7,7 +7,5 @@ pub mod diode;
 pub mod raw_section;
 pub mod regulator;
 pub mod reservoir;
-mod root;
-mod stretch;
 pub mod thermal;
 pub mod winding;

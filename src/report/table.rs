@@ -33,10 +33,7 @@ pub fn build(report: &Report, page: Page) -> String {
     let mut out = String::new();
     out.push_str(&verdict(report, page));
     out.push_str(&wiring(report));
-    out.push_str(&format!(
-        "\nBill of materials: pieces per unit, for the run of {}, on the shelf, left after it\n",
-        report.supply.builds
-    ));
+    out.push_str(&format!("\nBill of materials, run of {}\n", report.supply.builds));
     out.push_str(&bill(report, page));
     out.push_str("\nMargins, tightest first\n");
     out.push_str(&margins(report, page));
@@ -265,19 +262,20 @@ fn bill(report: &Report, page: Page) -> String {
 
 fn margins(report: &Report, page: Page) -> String {
     let mut table = sheet(
-        &["Of", "Limit", "Value", "Bound", "Margin", "", "Corner"],
+        &["Of", "Limit", "Value", "Bound", "Margin", "Corner"],
         &[2, 3, 4],
-        &[],
+        &[0, 5],
         page,
     );
     for margin in report.by_tightness() {
         let check = &margin.check;
         let unit = report.unit(margin);
         let number = |value: Option<f64>| value.map_or("?".into(), |v| engineering(v, unit));
-        let verdict = match (check.missing(), check.met()) {
-            (Some(column), _) => format!("FAILS: {column} is blank"),
-            (None, true) => String::new(),
-            (None, false) => "FAILS".into(),
+        let corner = check.corner.map_or("", |c| c.word());
+        let corner = match (check.missing(), check.met()) {
+            (Some(column), _) => format!("{corner} FAILS: {column} is blank"),
+            (None, true) => corner.to_owned(),
+            (None, false) => format!("{corner} FAILS"),
         };
         table.add_row([
             printable(&margin.of),
@@ -285,8 +283,7 @@ fn margins(report: &Report, page: Page) -> String {
             number(check.value.ok()),
             number(check.bound.ok()),
             margin_text(check.margin(), unit),
-            verdict,
-            check.corner.map_or("", |c| c.word()).to_owned(),
+            corner.trim_start().to_owned(),
         ]);
     }
     set(&table)
@@ -322,7 +319,10 @@ fn cautions(cautions: &[String], page: Page) -> String {
     out
 }
 
-/// A table in the house look: a ruled header, two spaces between columns. On a narrow page only the columns of free
+/// Pages up to this width have one space between columns, wider ones two.
+const NARROW: u16 = 90;
+
+/// A table in the house look: a ruled header, a gap between columns. On a narrow page only the columns of free
 /// text in `wraps` give way.
 fn sheet(header: &[&str], numbers: &[usize], wraps: &[usize], page: Page) -> Table {
     let mut table = Table::new();
@@ -339,8 +339,13 @@ fn sheet(header: &[&str], numbers: &[usize], wraps: &[usize], page: Page) -> Tab
             .set_width(width),
         None => table.set_content_arrangement(ContentArrangement::Disabled),
     };
+    let gap = if page.width.is_some_and(|width| width <= NARROW) {
+        1
+    } else {
+        2
+    };
     for (place, column) in table.column_iter_mut().enumerate() {
-        column.set_padding((0, if place + 1 == header.len() { 0 } else { 2 }));
+        column.set_padding((0, if place + 1 == header.len() { 0 } else { gap }));
         if !wraps.contains(&place) {
             column.set_constraint(ColumnConstraint::ContentWidth);
         }

@@ -23,7 +23,7 @@ pub(super) fn engineering(value: f64, unit: &str) -> String {
     let size = value.abs();
     let (scale, prefix) = if size >= 1e3 {
         (1e-3, "k")
-    } else if size >= 1.0 || size < 1e-9 {
+    } else if !(1e-9..1.0).contains(&size) {
         (1.0, "")
     } else if size >= 1e-3 {
         (1e3, "m")

@@ -5,23 +5,23 @@
 //! rectifier) not yet opened; an opened pair with the next of its banks; a section with the next of its devices; a
 //! solved section and device with the next sink. So nothing is solved that is dearer (or hotter) than the answer.
 
+mod stack;
+
 use std::cmp::Reverse;
 use std::collections::BinaryHeap;
-use std::sync::Arc;
 
-use super::bounds::{least_bank_f, least_rms_a, source_reaches};
-use super::column::Column;
-use super::prices::FloorPrices;
-use super::reach::{Reach, Source, bare_circuit, carries};
-use super::shelf::{Bank, Shelf};
-use super::solved::{Losses, Solved};
-use super::stop::Stop;
-use super::{Counts, Objective};
 use crate::audit::{Check, Corner, Known, Raw, SectionHeat, Site, Stage, rectifier, reservoir, whole};
-use crate::build::{pieces_of_rectifier, sink_takes};
-use crate::catalogue::{Rectifier, RectifierKind, Sink};
+use crate::build::pieces_of_rectifier;
+use crate::catalogue::{Rectifier, Sink};
 use crate::physics::winding::WindingLoad;
-use crate::units::Money;
+use crate::screen::bounds::{least_bank_f, least_rms_a, source_reaches};
+use crate::screen::column::Column;
+use crate::screen::prices::FloorPrices;
+use crate::screen::reach::{Reach, Source, bare_circuit, carries};
+use crate::screen::shelf::{Bank, Shelf};
+use crate::screen::solved::{Losses, Solved};
+use crate::screen::stop::Stop;
+use crate::screen::{Counts, Objective};
 
 /// A source with a rectifier; its banks once opened.
 struct Pair {
@@ -308,24 +308,6 @@ impl<'s, 'c> Walk<'s, 'c> {
         }
     }
 
-    fn push_stack(&mut self, stack: usize, place: usize) {
-        if place < self.stacks[stack].sinks.len() {
-            let column = self.column(stack, place);
-            let key = self.objective.order(column.floor_cost.0, heat_floor(column.heat_w()));
-            self.heap.push(Reverse((key, Entry::Stack(stack, place))));
-        }
-    }
-
-    fn column(&self, stack: usize, place: usize) -> Column<'c> {
-        let Stack { column, sinks } = &self.stacks[stack];
-        let sink = sinks[place];
-        let sink_cost = sink.map_or(0, |s| self.prices.cost(&s.part, 1).0);
-        let mut column = column.clone();
-        column.sink = sink;
-        column.floor_cost.0 += sink_cost;
-        column
-    }
-
     /// Solves one section under the least load of its devices; if there is hope, its devices come into question, the
     /// cheapest first.
     fn try_section(&mut self, pair: usize, place: usize, counts: &mut Counts) {
@@ -402,67 +384,5 @@ impl<'s, 'c> Walk<'s, 'c> {
             self.stacks.push(stack);
             self.push_stack(self.stacks.len() - 1, 0);
         }
-    }
-
-    /// Stacks every choice of sinks that keeps both junctions.
-    fn stack(&self, pair: &Pair, bank: Bank<'c>, stage: &Stage<'c>, losses: &Losses, found: &mut Vec<Stack<'c>>) {
-        let source = &self.sources[pair.source];
-        let rectifier = self.shelf.rectifiers[pair.rectifier];
-        let case = if rectifier.kind == RectifierKind::Bridge {
-            rectifier.case.as_deref()
-        } else {
-            None
-        };
-        let rectifier_sinks = self.sinks_that(case, |sink| {
-            rectifier::junction(self.site, rectifier, Ok(losses.package_w), sink).met()
-        });
-        let sinks = self.sinks_that(stage.device.case.as_deref(), |sink| {
-            stage.junction(self.site, Corner::High, Ok(losses.pass_w), sink).met()
-        });
-        if sinks.is_empty() {
-            return;
-        }
-        let section_cost = self.prices.cost(&source.transformer.part, 1)
-            + self
-                .prices
-                .cost(&rectifier.part, pieces_of_rectifier(rectifier.kind, source.path))
-            + self.prices.cost(&bank.can.part, u64::from(bank.cans));
-        for rectifier_sink in rectifier_sinks {
-            found.push(Stack {
-                column: Column {
-                    transformer: source.transformer,
-                    hookup: Arc::clone(&source.hookup),
-                    path: source.path,
-                    rectifier,
-                    rectifier_sink,
-                    reservoir: bank.can,
-                    cans: bank.cans,
-                    pass: stage.device,
-                    sink: None,
-                    core_w: source.core_w,
-                    section_w: losses.section_w,
-                    pass_w: losses.pass_w,
-                    floor_cost: section_cost + Money(self.device_cost(stage)) + self.sink_cost(rectifier_sink),
-                },
-                sinks: sinks.clone(),
-            });
-        }
-    }
-
-    fn sink_cost(&self, sink: Option<&Sink>) -> Money {
-        sink.map_or(Money(0), |s| self.prices.cost(&s.part, 1))
-    }
-
-    /// No sink and every sink for that outline with which the junction holds, cheapest first.
-    fn sinks_that(&self, case: Option<&str>, holds: impl Fn(Option<&Sink>) -> bool) -> Vec<Option<&'c Sink>> {
-        let fitting = self
-            .shelf
-            .sinks
-            .iter()
-            .filter(|s| sink_takes(s, case))
-            .map(|&s| Some(s));
-        let mut all: Vec<Option<&'c Sink>> = std::iter::once(None).chain(fitting).filter(|&s| holds(s)).collect();
-        all.sort_by_key(|&s| (self.sink_cost(s), s.map(|s| s.part.id)));
-        all
     }
 }

@@ -1,100 +1,16 @@
-//! Owns the raw section's periodic steady state: winding, rectifier, reservoir, load.
-//!
-//! The circuit is linear between the two instants at which conduction starts and ends, so everything but these two
-//! angles is closed form. The state is one voltage and its trajectories cannot cross, so the map of that voltage over
-//! one period rises with slope below 1: the periodic state is the single root of "voltage after a period minus voltage
-//! before", that is of the charge balance, and the slope of that map (e^-(losses)) is known exactly for Newton's step.
-//!
-//! Invariant: no time stepping; no solution with a raw voltage >= 0 is an answer (`None`: the section collapses).
-//!
-//! Source: the circuit is that of O. H. Schade, "Analysis of Rectifier Operation", Proc. IRE 31 (1943) 341-361, with
-//! a reservoir of finite capacitance and series resistance and a load of constant current and conductance.
+//! Owns the way to the periodic state: Newton's steps on both angles of a pulse, or one bracketed root.
 
 use std::f64::consts::{FRAC_PI_2, PI, SQRT_2};
 
+use super::RawSection;
 use super::root::falling;
 use super::stretch::{Basis, Integrals, Sum};
+use super::waveform::{Pulse, SETTLED_RAD, Waveform, decay_mean};
 
-/// Everything that the steady state depends on.
-#[derive(Debug, Clone, Copy, PartialEq)]
-pub struct RawSection {
-    /// Open-circuit voltage of the winding (of one half for centre-tap), rms of the sine with the same crest, volts; > 0.
-    pub source_rms_v: f64,
-    /// Mains frequency, hertz; > 0.
-    pub mains_hz: f64,
-    /// `true`: a pulse every half period (bridge, centre-tap, dual); `false`: one per period (half-wave).
-    pub full_wave: bool,
-    /// Series resistance of winding and diode slopes, ohms; >= 0.
-    pub series_ohm: f64,
-    /// Sum of the thresholds of the diodes in the path, volts; >= 0.
-    pub drop_v: f64,
-    /// Capacitance of the whole bank, farads; > 0.
-    pub bank_f: f64,
-    /// Series resistance of the whole bank, ohms; >= 0.
-    pub bank_esr_ohm: f64,
-    /// Constant part of the load current, amperes.
-    pub load_a: f64,
-    /// Conductive part of the load, siemens; >= 0.
-    pub load_s: f64,
-}
-
-/// The steady state: its figures are worked out when asked for. Source currents are those of the rectified pulses.
-#[derive(Debug, Clone, Copy)]
-pub struct Waveform {
-    section: RawSection,
-    /// Radians of a period of the raw voltage.
-    period: f64,
-    reactance: f64,
-    off_decay: f64,
-    pulse: Option<Pulse>,
-    integrals: Integrals,
-}
-
-/// A pulse of conduction: what the voltages and currents do in it.
-#[derive(Debug, Clone, Copy)]
-struct Pulse {
-    /// Radians of conduction.
-    length: f64,
-    /// Decay of the exponential part, per radian.
-    decay: f64,
-    /// Slope at the start, per radian, of the capacitor voltage at which current would start.
-    rise: f64,
-    /// Source current.
-    current: Sum,
-    /// Capacitor voltage.
-    stored: Sum,
-    /// Raw voltage.
-    raw: Sum,
-}
-
-/// The steady state, or `None` when there is none with a raw voltage >= 0 (the section collapses).
-///
-/// Formula: with v_s = sqrt 2 `source_rms_v` |sin wt|, on: i `series_ohm` = v_s - `drop_v` - v, i > 0; off: i = 0;
-/// C dv_C/dt = i - i_L, v = v_C + ESR (i - i_L), i_L = `load_a` + `load_s` v.
-/// Valid for: any values of the stated signs. Accuracy: charge balance to 1e-9 relative, figures to about 1e-10.
-/// A section without load sits at the crest less the drop, with no current.
-/// Source: module head.
-///
-/// # Examples
-/// Full wave, w C R_L = 20, R_s/R_L = 5 %: V_dc/V_pk = 0.8281, I_rms/I_dc = 1.788 (exact Schade grid):
-/// ```
-/// use binrail::physics::raw_section::{RawSection, steady_state};
-/// let hz = 50.0;
-/// let section = RawSection {
-///     source_rms_v: 0.5_f64.sqrt(), mains_hz: hz, full_wave: true, series_ohm: 0.05, drop_v: 0.0,
-///     bank_f: 20.0 / (std::f64::consts::TAU * hz), bank_esr_ohm: 0.0, load_a: 0.0, load_s: 1.0,
-/// };
-/// let wave = steady_state(&section).expect("does not collapse");
-/// assert!((wave.mean_v() - 0.8281).abs() < 5e-5);
-/// assert!((wave.source_rms_a() / wave.mean_v() - 1.788).abs() < 5e-4);
-/// ```
-#[must_use]
-pub fn steady_state(section: &RawSection) -> Option<Waveform> {
-    Solver::new(section).solve()
-}
-
+/// Newton's steps on both angles settle in four to seven; more means a guess too far off.
+const MOST_NEWTON_STEPS: u32 = 12;
 /// The section's constants in radians of the mains and in the form that the pulse needs.
-struct Solver<'a> {
+pub(super) struct Solver<'a> {
     section: &'a RawSection,
     crest: f64,
     period: f64,
@@ -111,7 +27,7 @@ struct Solver<'a> {
 }
 
 impl<'a> Solver<'a> {
-    fn new(section: &'a RawSection) -> Self {
+    pub(super) fn new(section: &'a RawSection) -> Self {
         let s = section;
         let spread = 1.0 + s.bank_esr_ohm * s.load_s;
         let loop_ohm = s.series_ohm * spread + s.bank_esr_ohm;
@@ -133,7 +49,7 @@ impl<'a> Solver<'a> {
         }
     }
 
-    fn solve(&self) -> Option<Waveform> {
+    pub(super) fn solve(&self) -> Option<Waveform> {
         let s = self.section;
         let open = self.crest - s.drop_v;
         if open <= 0.0 {
@@ -354,159 +270,5 @@ impl<'a> Solver<'a> {
             })
         };
         Some(Pulse { length, ..pulse })
-    }
-}
-
-impl Waveform {
-    /// Lowest raw voltage: where conduction starts, or behind it while the load still takes more than the source gives.
-    #[must_use]
-    pub fn valley_v(&self) -> f64 {
-        let Some(p) = &self.pulse else { return self.open_v() };
-        if p.raw.slope_at_start(p.decay) >= 0.0 {
-            return p.raw.one;
-        }
-        // The voltage rises where the current crests; the middle of the pulse mostly shows it, and saves that root.
-        let middle = 0.5 * p.length;
-        let rising = if p.raw.slopes(&p.point(middle)).0 > 0.0 {
-            middle
-        } else {
-            p.crest_at()
-        };
-        p.raw.one.min(p.raw.at(&p.point(p.flat(p.raw, 0.0, rising, -1.0))))
-    }
-
-    /// Highest raw voltage.
-    #[must_use]
-    pub fn peak_v(&self) -> f64 {
-        let Some(p) = &self.pulse else { return self.open_v() };
-        p.raw.at(&p.point(p.flat(p.raw, p.crest_at(), p.length, 1.0)))
-    }
-
-    /// Peak-to-peak ripple of the raw voltage.
-    #[must_use]
-    pub fn ripple_v(&self) -> f64 {
-        self.peak_v() - self.valley_v()
-    }
-
-    /// Mean raw voltage.
-    #[must_use]
-    pub fn mean_v(&self) -> f64 {
-        let Some(p) = &self.pulse else { return self.open_v() };
-        let s = &self.section;
-        // While off, the capacitor's voltage decays exponentially (straight, without conductance).
-        let spread = 1.0 + s.bank_esr_ohm * s.load_s;
-        let (rest, lost) = (self.rest(p), self.off_decay * self.rest(p));
-        let steady = s.load_a * self.reactance / spread;
-        let stored = (p.stored_at_end() * decay_mean(lost) - steady * rest * decay_mean_of_mean(lost)) * rest;
-        (self.integrals.of(p.raw) + (stored - s.bank_esr_ohm * s.load_a * rest) / spread) / self.period
-    }
-
-    /// Mean rectified source current.
-    #[must_use]
-    pub fn source_mean_a(&self) -> f64 {
-        self.pulse.map_or(0.0, |p| self.integrals.of(p.current) / self.period)
-    }
-
-    /// Its rms.
-    #[must_use]
-    pub fn source_rms_a(&self) -> f64 {
-        self.pulse.map_or(0.0, |p| {
-            (self.integrals.of_square(p.current).max(0.0) / self.period).sqrt()
-        })
-    }
-
-    /// Its crest.
-    #[must_use]
-    pub fn source_peak_a(&self) -> f64 {
-        self.pulse.map_or(0.0, |p| p.current.at(&p.point(p.crest_at())))
-    }
-
-    /// Rms current in the bank.
-    #[must_use]
-    pub fn reservoir_rms_a(&self) -> f64 {
-        let Some(p) = &self.pulse else { return 0.0 };
-        let s = &self.section;
-        let load = Sum {
-            one: s.load_a,
-            sin: 0.0,
-            cos: 0.0,
-            exp: 0.0,
-        }
-        .mix(1.0, p.raw, s.load_s);
-        let charging = p.current.mix(1.0, load, -1.0);
-        // While off, the bank carries the load current, which decays as the voltage does.
-        let rest = self.rest(p);
-        let spread = 1.0 + s.bank_esr_ohm * s.load_s;
-        let load_at_end = (s.load_a + s.load_s * p.stored_at_end()) / spread;
-        let off = load_at_end * load_at_end * rest * decay_mean(2.0 * self.off_decay * rest);
-        ((self.integrals.of_square(charging) + off).max(0.0) / self.period).sqrt()
-    }
-
-    /// Length of one pulse in radians of the mains period.
-    #[must_use]
-    pub fn conduction_rad(&self) -> f64 {
-        self.pulse.map_or(0.0, |p| p.length)
-    }
-
-    /// Without load: the crest less the drop.
-    fn open_v(&self) -> f64 {
-        SQRT_2 * self.section.source_rms_v - self.section.drop_v
-    }
-
-    fn rest(&self, pulse: &Pulse) -> f64 {
-        self.period - pulse.length
-    }
-}
-
-impl Pulse {
-    fn point(&self, x: f64) -> Basis {
-        Basis::new(x, self.decay)
-    }
-
-    fn stored_at_end(&self) -> f64 {
-        self.stored.at(&self.point(self.length))
-    }
-
-    /// Where the current is highest.
-    fn crest_at(&self) -> f64 {
-        if self.current.slope_at_start(self.decay) > 0.0 {
-            self.flat(self.current, 0.0, self.length, 1.0)
-        } else {
-            0.0
-        }
-    }
-
-    /// Where a quantity stops to rise (`sign` 1) or to fall (-1) between two angles after the start.
-    fn flat(&self, quantity: Sum, low: f64, high: f64, sign: f64) -> f64 {
-        falling(low, high, 0.5 * (low + high), SETTLED_RAD, |x| {
-            let (first, second) = quantity.slopes(&Basis::new(x, self.decay));
-            (sign * first, sign * second)
-        })
-    }
-}
-
-/// Newton's steps on both angles settle in four to seven; more means a guess too far off.
-const MOST_NEWTON_STEPS: u32 = 12;
-/// Steps below this leave angles that are exact but for rounding, since the next step would be its square.
-const SETTLED_RAD: f64 = 1e-9;
-
-/// Below this decay the closed forms lose more digits than their series drop.
-const SMALL_DECAY: f64 = 1e-3;
-
-/// Mean of e^-x over x from 0 to z: (1 - e^-z)/z.
-fn decay_mean(z: f64) -> f64 {
-    if z < SMALL_DECAY {
-        1.0 - z / 2.0 * (1.0 - z / 3.0 * (1.0 - z / 4.0 * (1.0 - z / 5.0)))
-    } else {
-        -(-z).exp_m1() / z
-    }
-}
-
-/// (z - 1 + e^-z)/z^2: what a constant drain takes off the mean of a decaying voltage.
-fn decay_mean_of_mean(z: f64) -> f64 {
-    if z < SMALL_DECAY {
-        0.5 * (1.0 - z / 3.0 * (1.0 - z / 4.0 * (1.0 - z / 5.0 * (1.0 - z / 6.0))))
-    } else {
-        (z + (-z).exp_m1()) / (z * z)
     }
 }
