@@ -1,5 +1,5 @@
 //! The raw section against published values, against balances that must hold, and against its own waveform sampled.
-#![allow(clippy::unwrap_used)]
+#![allow(clippy::unwrap_used, clippy::print_stdout)]
 
 mod common;
 

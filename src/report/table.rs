@@ -233,29 +233,27 @@ fn wiring(report: &Report) -> String {
 }
 
 fn bill(report: &Report, page: Page) -> String {
-    let header = [
-        "Part",
-        "Description",
-        "Unit needs",
-        "Run needs",
-        "Shelf",
-        "Left",
-        "Price each",
-        "Run cost",
-    ];
-    let mut table = sheet(&header, &[2, 3, 4, 5, 6, 7], &[1], page);
+    let mut header = vec!["Part", "Per unit", "Run", "Shelf", "Left", "Each", "Run cost"];
+    let described = page.width.is_none_or(|width| width >= DESCRIBED);
+    if described {
+        header.push("Description");
+    }
+    let mut table = sheet(&header, &[1, 2, 3, 4, 5, 6], &[7], page);
     for line in &report.lines {
         let run = line.qty * report.supply.builds;
-        table.add_row([
+        let mut row = vec![
             printable(&line.part.name),
-            printable(&line.part.description),
             line.qty.to_string(),
             run.to_string(),
             line.part.stock.map_or("-".into(), |s| s.to_string()),
             left(line, report.supply.builds).map_or("-".into(), |l| l.to_string()),
             line.unit_price.to_string(),
             (line.unit_price * run).to_string(),
-        ]);
+        ];
+        if described {
+            row.push(printable(&line.part.description));
+        }
+        table.add_row(row);
     }
     set(&table)
 }
@@ -264,7 +262,7 @@ fn margins(report: &Report, page: Page) -> String {
     let mut table = sheet(
         &["Of", "Limit", "Value", "Bound", "Margin", "Corner"],
         &[2, 3, 4],
-        &[0, 5],
+        &[5],
         page,
     );
     for margin in report.by_tightness() {
@@ -319,6 +317,8 @@ fn cautions(cautions: &[String], page: Page) -> String {
     out
 }
 
+/// Narrower pages leave out descriptions.
+const DESCRIBED: u16 = 72;
 /// Pages up to this width have one space between columns, wider ones two.
 const NARROW: u16 = 90;
 

@@ -20,6 +20,7 @@ pub(super) fn engineering(value: f64, unit: &str) -> String {
         _ if !takes_prefix => return format!("{} {unit}", digits(value)),
         _ => {}
     }
+    let value = four_digits(value);
     let size = value.abs();
     let (scale, prefix) = if size >= 1e3 {
         (1e-3, "k")
@@ -33,9 +34,14 @@ pub(super) fn engineering(value: f64, unit: &str) -> String {
     format!("{} {prefix}{unit}", digits(value * scale))
 }
 
+/// Rounded to four significant digits, so that the prefix is chosen for what is printed.
+fn four_digits(value: f64) -> f64 {
+    format!("{value:.3e}").parse().unwrap_or(value)
+}
+
 /// Four significant digits, never in powers of ten; whole numbers of more digits stay whole.
 pub(super) fn digits(value: f64) -> String {
-    let size = value.abs();
+    let size = four_digits(value).abs();
     let decimals = if size >= 1000.0 {
         0
     } else if size >= 100.0 {
@@ -66,6 +72,8 @@ mod tests {
             (1234.5, "W", "1.234 kW"),
             (83_456.2, "h", "83456 h"),
             (0.05, "1", "5.000 %"),
+            (0.999_999_99, "A", "1.000 A"),
+            (9.999_99, "W", "10.00 W"),
             (-0.000_000_000_1, "V", "0.000 V"),
             (45.0, "degC", "45.00 degC"),
             (-2.5, "A", "-2.500 A"),
