@@ -90,6 +90,33 @@ pub fn misfits(supply: &Supply, build: &Build) -> Vec<Misfit> {
             }
         }
     }
+    for (place, instance) in build.transformers.iter().enumerate() {
+        let fed = build.sections.iter().filter(|s| s.transformer == place).count();
+        if fed > 1 && supply.share_never {
+            say(
+                &instance.id,
+                "share = \"never\" gives every section its own transformer".into(),
+            );
+        }
+    }
+    for (k, (rail, choice)) in supply.rails.iter().zip(&build.rails).enumerate() {
+        for (other, its) in supply.rails[..k].iter().zip(&build.rails) {
+            let (Some(name), Some(other_name)) = (&rail.section, &other.section) else {
+                continue;
+            };
+            if (name == other_name) != (choice.section == its.section) {
+                let must = if name == other_name {
+                    "must share"
+                } else {
+                    "must not share"
+                };
+                say(
+                    &rail.name,
+                    format!("{must} a section with rail {}: see their key section", other.name),
+                );
+            }
+        }
+    }
     for section in &build.sections {
         let transformer = build.transformers[section.transformer].part;
         let known = hookups(transformer);
@@ -147,8 +174,21 @@ pub fn misfits(supply: &Supply, build: &Build) -> Vec<Misfit> {
                 ),
             );
         }
+        let negative = |&rail: &usize| supply.rails[rail].voltage_v < 0.0;
+        if section.rails.iter().any(negative) && !section.rails.iter().all(negative) {
+            say(
+                &section.id,
+                "feeds rails of both polarities; a section has one polarity".into(),
+            );
+        }
+        if section.rails.len() > 1 && supply.share_never {
+            say(&section.id, "share = \"never\" gives every rail its own section".into());
+        }
         for &rail in &section.rails {
             let rail = &supply.rails[rail];
+            if section.rails.len() > 1 && rail.isolated {
+                say(&rail.name, "is isolated and shares its section".into());
+            }
             if !rail.paths.contains(&section.path) {
                 say(&rail.name, format!("its paths do not name {}", section.path.word()));
             }

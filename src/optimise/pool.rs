@@ -4,7 +4,9 @@
 //! alone cuts nothing. Charging l >= 0 for every unit of the capped quantity keeps a bound: a build with objective at
 //! most T and the cap kept has
 //!
-//!     sum over rails of (first + l second) <= T + l cap
+//! ```text
+//! sum over rails of (first + l second) <= T + l cap
+//! ```
 //!
 //! so whatever exceeds that with the least (first + l second) of the other rails can go. l is chosen where the least
 //! sum less l cap is greatest (the dual of the cap); any l would be right. Without a cap l is 0.

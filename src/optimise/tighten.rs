@@ -4,7 +4,9 @@
 //! that: it must take a column that holds the part, which is dearer than its cheapest. For a column c of rail i and any
 //! build with it, let S_p be the rails that share part p with it. Then
 //!
-//!     cost >= sum over p of q_p u(q_p + most that S_p use) + sum over rails j of (min_j + max over shared p of extra_j(p))
+//! ```text
+//! cost >= sum over p of q_p u(q_p + most that S_p use) + sum over rails j of (min_j + max over shared p of extra_j(p))
+//! ```
 //!
 //! with min_j the least column of rail j and extra_j(p) what its least column with p costs more. The maximum is at least
 //! the mean over the parts that could gain, so each part may be charged its share and the best S_p found part by part.
