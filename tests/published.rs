@@ -7,7 +7,6 @@
 //! Tolerances: closed forms 1e-9, printed numbers their last digit, rules of thumb 10 %.
 #![allow(clippy::unwrap_used)]
 
-#[allow(unreachable_pub)]
 mod common;
 
 use std::f64::consts::{PI, SQRT_2, TAU};
