@@ -68,7 +68,9 @@ impl<'a> Solver<'a> {
             None => self.pulse(falling(first, FRAC_PI_2, guess, 0.0, |angle| self.surplus(angle)))?,
         };
         let wave = self.waveform(Some(pulse));
-        (wave.valley_v() >= 0.0).then_some(wave)
+        // During the pulse the load alone lowers the voltage at most by this; mostly that settles it without the valley.
+        let most_lost = self.load_slope(pulse.stored.one).max(0.0) * pulse.length;
+        (pulse.raw.one > most_lost || wave.valley_v() >= 0.0).then_some(wave)
     }
 
     fn waveform(&self, pulse: Option<Pulse>) -> Waveform {
