@@ -4,7 +4,7 @@ use crate::build::Build;
 use crate::catalogue::{DeviceKind, Part, Polarity, RectifierKind, Status};
 use crate::physics::constants::HIGH_FREQUENCY_HZ;
 use crate::supply::{Path, Supply};
-use crate::units::Money;
+use crate::units::RunCost;
 
 /// Said with every build.
 pub const SAFETY: [&str; 4] = [
@@ -93,13 +93,12 @@ pub fn cautions(supply: &Supply, build: &Build) -> Vec<String> {
 }
 
 /// The break up to which it pays to buy, and what it saves over the whole run.
-fn cheaper_to_buy_more(part: &Part, pieces: u64) -> Option<(u64, Money)> {
-    let now = part.unit_price(pieces) * pieces;
-    part.breaks
-        .iter()
+fn cheaper_to_buy_more(part: &Part, pieces: u64) -> Option<(u64, RunCost)> {
+    let now = part.unit_price(pieces).of_run(pieces);
+    (part.breaks.iter())
         .filter(|b| b.pieces > pieces && part.stock.is_none_or(|stock| b.pieces <= stock))
-        .map(|b| (b.pieces, b.price * b.pieces))
-        .filter(|&(_, total)| total < now)
-        .min_by_key(|&(pieces, total)| (total, pieces))
-        .map(|(pieces, total)| (pieces, Money(now.0 - total.0)))
+        .map(|b| (b.price.of_run(b.pieces), b.pieces))
+        .filter(|&(total, _)| total < now)
+        .min()
+        .map(|(total, pieces)| (pieces, RunCost(now.0 - total.0)))
 }

@@ -45,7 +45,7 @@ pub fn bill(report: &Report) -> String {
                 run.to_string(),
                 l.unit_price.to_string(),
                 l.cost().to_string(),
-                (l.unit_price * run).to_string(),
+                l.unit_price.of_run(run).to_string(),
                 l.part.stock.map(|s| s.to_string()).unwrap_or_default(),
                 super::table::left(l, report.supply.builds)
                     .map(|left| left.to_string())

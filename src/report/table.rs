@@ -186,8 +186,8 @@ fn verdict(report: &Report, page: Page) -> String {
         let run = report
             .lines
             .iter()
-            .map(|l| l.cost() * report.supply.builds)
-            .sum::<crate::units::Money>();
+            .map(|l| l.cost().of_run(report.supply.builds))
+            .sum::<crate::units::RunCost>();
         let units = counted(report.supply.builds, "unit");
         out.push_str(&format!(
             "{}, {units}: {}\n",
@@ -248,7 +248,7 @@ fn bill(report: &Report, page: Page) -> String {
             line.part.stock.map_or("-".into(), |s| s.to_string()),
             left(line, report.supply.builds).map_or("-".into(), |l| l.to_string()),
             line.unit_price.to_string(),
-            (line.unit_price * run).to_string(),
+            line.unit_price.of_run(run).to_string(),
         ];
         if described {
             row.push(printable(&line.part.description));

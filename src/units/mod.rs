@@ -6,7 +6,7 @@ mod quantity;
 mod range;
 
 pub use measure::{Measure, money, whole};
-pub use money::Money;
+pub use money::{Money, RunCost};
 pub use quantity::Dimension;
 pub use range::Range;
 
