@@ -11,7 +11,8 @@ use super::combine::{Combine, Run};
 use super::milp::{Answer, Solver, least as least_by_solver};
 use super::pool::Pool;
 use super::tighten::tighten;
-use crate::audit::{Site, whole};
+use crate::audit::{Site, compared, whole};
+use crate::catalogue::Part;
 use crate::screen::{Column, Counts, Must, Objective};
 use crate::units::Money;
 
@@ -100,10 +101,15 @@ pub(super) fn search<'c>(
             .zip(&least)
             .filter_map(|(rail, least)| Some(rail.walk.floor()?.0 + base - least))
             .min();
-        match next {
-            Some(next) if !found && !beyond_cap(question, reach) => reach = (reach + step).max(next),
-            _ => return End::Complete,
+        if found || beyond_cap(question, reach) {
+            return End::Complete;
         }
+        reach = match next {
+            Some(next) => (reach + step).max(next),
+            // All columns are here, but a build may cost more than the least shares that they were let in by.
+            None if reach < dearest(question, &ready) => reach + step,
+            None => return End::Complete,
+        };
         step *= 2;
     }
 }
@@ -177,6 +183,18 @@ fn ask_solver<'c>(
         Answer::Infeasible => Said::NothingWithinReach,
         Answer::Undecided(_) => Said::Nothing,
     }
+}
+
+/// No combination has an objective above this: a price never rises with the pieces that others add.
+fn dearest(question: &Question, ready: &[&[Ready]]) -> i64 {
+    let most = |ready: &Ready| match question.objective {
+        Objective::Cost => {
+            let price = |&(part, pieces): &(&Part, u64)| part.unit_price(pieces * question.supply.builds) * pieces;
+            (ready.lines.iter().map(price).sum::<Money>() + ready.column.pass.fitted_price).0
+        }
+        Objective::Heat => compared(ready.heat_w) + 1,
+    };
+    ready.iter().filter_map(|rail| rail.iter().map(most).max()).sum()
 }
 
 /// Whether the supply's cap on the objective rules out everything above this.
