@@ -9,11 +9,13 @@ use clap::{Args, ValueEnum};
 
 use super::output::{Answer, page};
 use super::{Common, Failure, Format, call_fault, input};
+use crate::build::device_serves;
 use crate::catalogue::{Catalogue, Loaded};
-use crate::optimise::{NODE_BUDGET, Outcome, Proof, Question, optimise};
-use crate::report::{ProofLine, Report, csv, json, none, table};
+use crate::optimise::{NODE_BUDGET, Outcome, Proof, Question, Reasons, optimise, rejections};
+use crate::report::none::NoBuild;
+use crate::report::{ProofLine, Report, csv, json, table};
 use crate::screen::{Counts, Objective, Stop};
-use crate::supply::{Supply, read};
+use crate::supply::{Rail, Supply, read};
 
 #[derive(ValueEnum, Debug, Clone, Copy)]
 enum By {
@@ -99,7 +101,17 @@ impl Asked {
         let work = work(&outcome.counts, read_in, begun.elapsed());
         let proved = outcome.proof == Proof::Proved;
         let answer = if outcome.builds.is_empty() {
-            let none = none::None::new(&question, &outcome);
+            let reasons = if proved {
+                rejections(&question).map_err(Failure::Bug)?
+            } else {
+                Reasons::default()
+            };
+            let none = NoBuild {
+                proof: ProofLine::new(&outcome, None, question.objective),
+                reasons,
+                unserved: unserved(&question),
+                currency: loaded.catalogue.currency.clone(),
+            };
             let text = match common.format {
                 Format::Table => none.table(page(common)),
                 Format::Json => json::text(&none.json()),
@@ -155,6 +167,24 @@ impl Asked {
             node_budget: NODE_BUDGET,
         })
     }
+}
+
+/// Rails that no device serves by the rules of assembly.
+fn unserved(question: &Question) -> Vec<String> {
+    let served = |rail: &Rail| {
+        question
+            .catalogue
+            .pass_devices
+            .iter()
+            .any(|d| device_serves(d, rail, true))
+    };
+    question
+        .supply
+        .rails
+        .iter()
+        .filter(|rail| !served(rail))
+        .map(|rail| rail.name.clone())
+        .collect()
 }
 
 /// A flag that the first Ctrl-C sets; the second one ends the program.

@@ -5,6 +5,7 @@
 mod best;
 mod columns;
 mod combine;
+mod company;
 mod milp;
 mod pool;
 mod search;
@@ -12,6 +13,7 @@ mod tighten;
 
 pub use best::{Found, Key};
 pub use columns::columns_of;
+pub use company::{Companies, Company, Joint, Nearest, Reasons, Rejection, companies, rejections};
 pub use milp::{Answer, Solver, least};
 
 use std::collections::BTreeSet;

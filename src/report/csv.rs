@@ -5,7 +5,7 @@ use super::json::wave_figures;
 use crate::fault::Fault;
 use crate::physics::raw_section::Waveform;
 
-fn table(header: &[&str], rows: impl IntoIterator<Item = Vec<String>>) -> String {
+pub(super) fn table(header: &[&str], rows: impl IntoIterator<Item = Vec<String>>) -> String {
     let mut writer = csv::Writer::from_writer(Vec::new());
     let rows = std::iter::once(header.iter().map(ToString::to_string).collect()).chain(rows);
     for row in rows {

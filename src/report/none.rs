@@ -1,41 +1,78 @@
 //! Owns the answer when no build passes: what keeps the parts out, or how far the search came.
 
-use serde_json::Value;
+use serde_json::{Value, json};
 
-use super::table::Page;
-use super::{ProofLine, json};
-use crate::optimise::{Outcome, Question};
+use super::ProofLine;
+use super::json::{none, unit_of};
+use super::table::{Page, none as none_page};
+use crate::optimise::{Joint, Reasons};
 
 /// No build, and why.
 #[derive(Debug, Clone)]
-pub struct None {
-    proof: ProofLine,
+pub struct NoBuild {
+    /// How far the search came.
+    pub proof: ProofLine,
+    /// Why nothing passes; empty when the search was stopped.
+    pub reasons: Reasons,
+    /// Rails that no device of the catalogue serves at all.
+    pub unserved: Vec<String>,
+    /// Currency of all prices.
+    pub currency: Option<String>,
 }
 
-impl None {
-    /// For an outcome without builds.
-    #[must_use]
-    pub fn new(question: &Question, outcome: &Outcome) -> None {
-        None {
-            proof: ProofLine::new(outcome, Option::None, question.objective),
-        }
-    }
-
+impl NoBuild {
     /// binrail.none/1
     #[must_use]
     pub fn json(&self) -> Value {
-        json::none(self.proof.status, Some(self.proof.bound), &[], &[])
+        let rejected: Vec<Value> = (self.reasons.rejected.iter())
+            .map(|r| {
+                json!({
+                    "slot": r.slot.word(),
+                    "limit": r.limit.word(),
+                    "count": r.count,
+                    "nearest": {
+                        "part": r.nearest.part,
+                        "margin": r.nearest.margin,
+                        "unit": unit_of(r.limit, self.currency.as_deref()),
+                    },
+                })
+            })
+            .collect();
+        none(self.proof.status, Some(self.proof.bound), &rejected, &self.joint())
     }
 
     /// As a page.
     #[must_use]
-    pub fn table(&self, _page: Page) -> String {
-        format!("no build passes ({})\n", self.proof.status)
+    pub fn table(&self, page: Page) -> String {
+        none_page(self, page)
     }
 
-    /// As CSV.
+    /// As CSV, one row for each slot and limit.
     #[must_use]
     pub fn csv(&self) -> String {
-        "slot,limit,count,nearest,margin,unit\n".into()
+        let header = ["slot", "limit", "count", "nearest", "margin", "unit"];
+        super::csv::table(
+            &header,
+            self.reasons.rejected.iter().map(|r| {
+                vec![
+                    r.slot.word().to_owned(),
+                    r.limit.word().to_owned(),
+                    r.count.to_string(),
+                    r.nearest.part.clone(),
+                    r.nearest.margin.map(|m| m.to_string()).unwrap_or_default(),
+                    unit_of(r.limit, self.currency.as_deref()).to_owned(),
+                ]
+            }),
+        )
+    }
+
+    /// The limits that cannot hold together, stock with its part.
+    #[must_use]
+    pub fn joint(&self) -> Vec<String> {
+        let name = |j: &Joint| match &j.part {
+            Some(part) => format!("{} {part}", j.limit.word()),
+            None => j.limit.word().to_owned(),
+        };
+        self.reasons.joint.iter().map(name).collect()
     }
 }

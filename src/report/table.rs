@@ -4,7 +4,8 @@ use comfy_table::presets::NOTHING;
 use comfy_table::{CellAlignment, ColumnConstraint, ContentArrangement, ContentLineStyle, LineStyle, Table};
 
 use super::Report;
-use super::json::wave_figures;
+use super::json::{unit_of, wave_figures};
+use super::none::NoBuild;
 use super::text::{digits, engineering, printable};
 use crate::build::Line;
 use crate::catalogue::{Part, Sink};
@@ -97,6 +98,48 @@ pub fn rank(reports: &[Report], page: Page) -> String {
     out.push_str(&set(&table));
     // The cautions of the best build, which all builds of the list share in the main.
     out.push_str(&cautions(reports.first().map_or(&[][..], |r| &r.cautions), page));
+    out
+}
+
+/// No build: what keeps the parts out.
+#[must_use]
+pub(super) fn none(answer: &NoBuild, page: Page) -> String {
+    if answer.proof.status == "open" {
+        let words = "stopped before a build was found; whether one passes is open";
+        return strong(words, false, page) + "\n";
+    }
+    let mut out = strong("no build passes (proved)", false, page) + "\n";
+    for rail in &answer.unserved {
+        let kinds = "no device in the catalogue has its voltage, polarity and kind";
+        out.push_str(&format!("\nRail {}: {kinds}\n", printable(rail)));
+    }
+    let joint = answer.joint();
+    if !joint.is_empty() {
+        out.push_str(&format!(
+            "\nEach rail passes alone, but not together: {}\n",
+            printable(&joint.join(", "))
+        ));
+    }
+    if !answer.reasons.rejected.is_empty() {
+        out.push_str("\nParts that fail even in their best company, by the limit that is tightest there\n");
+        let mut table = sheet(&["Slot", "Limit", "Parts", "Nearest", "Short by"], &[2, 4], &[], page);
+        for r in &answer.reasons.rejected {
+            let unit = unit_of(r.limit, answer.currency.as_deref());
+            table.add_row([
+                r.slot.word().to_owned(),
+                r.limit.word().to_owned(),
+                r.count.to_string(),
+                printable(&r.nearest.part),
+                r.nearest
+                    .margin
+                    .map_or("a blank cell".into(), |m| margin_text(Some(-m), unit)),
+            ]);
+        }
+        out.push_str(&set(&table));
+    }
+    if !answer.reasons.complete {
+        out.push_str("\nStopped before every part was looked at: more may fail.\n");
+    }
     out
 }
 

@@ -1,0 +1,139 @@
+//! Owns what cannot hold together: the limits of the whole supply that stand between rails which each pass alone.
+
+use crate::audit::{Limit, whole};
+use crate::build::Build;
+use crate::catalogue::{Catalogue, Part, PartId};
+use crate::optimise::{Disagreement, Proof, Question, optimise};
+
+/// A limit that cannot hold together with the rest.
+#[derive(Debug, Clone, PartialEq, Eq, PartialOrd, Ord)]
+pub struct Joint {
+    /// Cost, heat or stock.
+    pub limit: Limit,
+    /// The part that is short, for stock.
+    pub part: Option<String>,
+}
+
+/// Each limit of cost, heat and stock without which the supply has a build; if there is none, each that is among the
+/// fewest that must go together. And whether all of that is proved.
+pub(super) fn joint(question: &Question) -> Result<(Vec<Joint>, bool), Disagreement> {
+    let (caps, parts) = (&question.supply.caps, question.catalogue.parts());
+    let mut limits = Vec::new();
+    limits.extend(caps.cost.map(|_| Limit::Cost));
+    limits.extend(caps.heat_w.map(|_| Limit::Heat));
+    limits.extend({ parts }.any(|p| p.stock.is_some()).then_some(Limit::Stock));
+    let mut proved = true;
+    let mut found: Vec<Joint> = Vec::new();
+    for size in 1..=limits.len() {
+        for set in subsets(&limits, size) {
+            let ask = |lifted: &dyn Fn(&Part) -> bool| Changed::new(question, &set, lifted).overdrawn(question);
+            let short = match ask(&|_| true)? {
+                Answer::Short(short) => short,
+                Answer::None => continue,
+                Answer::Open => {
+                    proved = false;
+                    continue;
+                }
+            };
+            found
+                .extend((set.iter().filter(|&&limit| limit != Limit::Stock)).map(|&limit| Joint { limit, part: None }));
+            // Of the parts that are short in one build one alone may be enough.
+            let mut enough = Vec::new();
+            for &part in short.iter().filter(|_| short.len() > 1) {
+                match ask(&|p| p.id == part)? {
+                    Answer::Short(_) => enough.push(part),
+                    Answer::None => {}
+                    Answer::Open => proved = false,
+                }
+            }
+            let named = if enough.is_empty() { short } else { enough };
+            let names = question.catalogue.parts().filter(|p| named.contains(&p.id));
+            found.extend(names.map(|p| Joint {
+                limit: Limit::Stock,
+                part: Some(p.name.clone()),
+            }));
+        }
+        if !found.is_empty() || !proved {
+            break;
+        }
+    }
+    found.sort();
+    found.dedup();
+    Ok((found, proved))
+}
+
+/// All subsets of that size, in order.
+fn subsets(limits: &[Limit], size: usize) -> Vec<Vec<Limit>> {
+    let pick = |set: usize| (0..limits.len()).filter(move |i| set & (1 << i) != 0);
+    (0..1_usize << limits.len())
+        .filter(|set| set.count_ones() as usize == size)
+        .map(|set| pick(set).map(|i| limits[i]).collect())
+        .collect()
+}
+
+enum Answer {
+    /// There is a build; it takes more of these parts than there are.
+    Short(Vec<PartId>),
+    /// There is none.
+    None,
+    /// Stopped before either.
+    Open,
+}
+
+/// A question with limits lifted.
+struct Changed {
+    supply: crate::supply::Supply,
+    catalogue: Catalogue,
+}
+
+impl Changed {
+    fn new(question: &Question, lifted: &[Limit], unlimited: &dyn Fn(&Part) -> bool) -> Changed {
+        let mut supply = question.supply.clone();
+        let mut catalogue = question.catalogue.clone();
+        if lifted.contains(&Limit::Cost) {
+            supply.caps.cost = None;
+        }
+        if lifted.contains(&Limit::Heat) {
+            supply.caps.heat_w = None;
+        }
+        if lifted.contains(&Limit::Stock) {
+            let parts = (catalogue.transformers.iter_mut().map(|x| &mut x.part))
+                .chain(catalogue.rectifiers.iter_mut().map(|x| &mut x.part))
+                .chain(catalogue.reservoirs.iter_mut().map(|x| &mut x.part))
+                .chain(catalogue.pass_devices.iter_mut().map(|x| &mut x.part))
+                .chain(catalogue.sinks.iter_mut().map(|x| &mut x.part));
+            for part in parts {
+                if unlimited(part) {
+                    part.stock = None;
+                }
+            }
+        }
+        Changed { supply, catalogue }
+    }
+
+    /// The parts that its best build takes too many of, as the question has them.
+    fn overdrawn(&self, question: &Question) -> Result<Answer, Disagreement> {
+        let outcome = optimise(&Question {
+            supply: &self.supply,
+            catalogue: &self.catalogue,
+            top: 1,
+            ..question.clone()
+        })?;
+        let Some(best) = outcome.builds.first() else {
+            return Ok(match outcome.proof {
+                Proof::Proved => Answer::None,
+                Proof::Open { .. } => Answer::Open,
+            });
+        };
+        Ok(Answer::Short(short(question, &best.build)))
+    }
+}
+
+fn short(question: &Question, build: &Build) -> Vec<PartId> {
+    let stock: std::collections::BTreeMap<PartId, &Part> = question.catalogue.parts().map(|p| (p.id, p)).collect();
+    (build.lines(question.supply).iter())
+        .filter_map(|line| Some((stock.get(&line.part.id)?, line.qty)))
+        .filter(|(part, qty)| whole::stock(question.supply, part, *qty).is_some_and(|c| !c.met()))
+        .map(|(part, _)| part.id)
+        .collect()
+}
