@@ -41,6 +41,7 @@ impl Case {
             without: self.without.clone(),
             with: self.with.clone(),
             stop: Stop::default(),
+            node_budget: binrail::optimise::NODE_BUDGET,
         }
     }
 

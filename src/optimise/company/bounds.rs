@@ -143,7 +143,8 @@ impl<'a, 's> Outlooks<'a, 's> {
             let more_v = diodes * (threshold_v.most - threshold_v.least);
             Some((steady_state(&section), section.drop_v, more_v))
         };
-        let (least, most): (fn(Span) -> f64, fn(Span) -> f64) = (|span| span.least, |span| span.most);
+        let least: fn(Span) -> f64 = |span| span.least;
+        let most: fn(Span) -> f64 = |span| span.most;
         let Some((kind, drop_v, _)) = solve(Corner::Low, load_a.least, least) else {
             return enclosure;
         };
