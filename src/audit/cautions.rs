@@ -23,6 +23,12 @@ pub fn cautions(supply: &Supply, build: &Build) -> Vec<String> {
             "inside_rise is 0: the air inside a closed box is warmer than outside; measure or estimate it.".into(),
         );
     }
+    if supply.rails.len() > 1 && build.transformers.len() == supply.rails.len() && !supply.share_never {
+        found.push(
+            "Every rail has its own section and transformer here: this version does not look for shared ones, which may be cheaper."
+                .into(),
+        );
+    }
     for instance in &build.transformers {
         if instance.part.core_loss_w.is_none() {
             found.push(format!(

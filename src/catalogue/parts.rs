@@ -118,6 +118,15 @@ impl Part {
     }
 }
 
+impl Part {
+    /// Cost of `pieces` when no more than `in_all` are bought at once, and no more than the stock holds: what they cost
+    /// at least, since prices never rise with pieces.
+    #[must_use]
+    pub fn least_cost(&self, pieces: u64, in_all: u64) -> Money {
+        self.unit_price(self.stock.map_or(in_all, |stock| in_all.min(stock))) * pieces
+    }
+}
+
 /// One secondary winding, or one half of an x-0-x winding.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub struct Secondary {

@@ -102,6 +102,16 @@ impl<'c> Best<'c> {
         }
     }
 
+    /// Offers a build that another search found.
+    pub(super) fn offer_found(&mut self, found: Found<'c>) {
+        let mut pieces: BTreeMap<PartId, u64> = BTreeMap::new();
+        for (part, qty) in found.build.uses() {
+            *pieces.entry(part.id).or_insert(0) += qty;
+        }
+        let Found { key, build } = found;
+        self.offer(pieces.into_iter().collect(), key.cost, key.heat, || build);
+    }
+
     fn last(&self) -> Option<(&Bill, &Found<'c>)> {
         self.by_bill
             .iter()

@@ -182,7 +182,7 @@ impl<'a, 'c> Combine<'a, 'c> {
         let price = |part: &&'c Part| {
             let id = part.id.0 as usize;
             let most = (self.pieces[id] + self.addable[depth][id]) * self.supply().builds;
-            part.unit_price(part.stock.map_or(most, |stock| most.min(stock))) * self.pieces[id]
+            part.least_cost(self.pieces[id], most)
         };
         used.iter().map(price).sum()
     }

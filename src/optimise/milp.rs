@@ -2,7 +2,8 @@
 //!
 //! The only file that knows a solver. Variables: one binary for each column; for each part whose price can move, pieces
 //! bought at each of its prices with a binary for the price. Rows: one column for each rail; pieces bought = pieces
-//! used; a price needs its pieces; stock; caps. A solver's answer is never taken at its word: the caller recomputes.
+//! used; a price needs its pieces; stock; caps. The caller recomputes every choice; that there is none is taken at the
+//! solver's word, so the rows are a little wider than the audit.
 
 use std::collections::BTreeMap;
 
@@ -64,10 +65,12 @@ pub fn least(supply: &Supply, objective: Objective, rails: &[Vec<Column>], solve
     for columns in &choice {
         rows.push(constraint!(columns.iter().sum::<Expression>() == 1.0));
     }
-    if let Some(cap) = supply.caps.cost {
+    // As wide as the audit's rounding, and more: what the rows let through is judged again, what they cut is gone.
+    let wide = |cap: f64| cap + 1e-8 * cap.max(1.0);
+    if let Some(cap) = supply.caps.cost.map(wide) {
         rows.push(constraint!(cost.clone() <= cap));
     }
-    if let Some(cap) = supply.caps.heat_w {
+    if let Some(cap) = supply.caps.heat_w.map(wide) {
         rows.push(constraint!(heat.clone() <= cap));
     }
     let problem = variables.minimise(match objective {

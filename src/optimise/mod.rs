@@ -87,46 +87,29 @@ pub struct Disagreement {
 /// # Errors
 /// When the audit rejects a build that the search found: a bug to report.
 pub fn optimise<'c>(question: &Question<'c>) -> Result<Outcome<'c>, Disagreement> {
-    let site = Site::new(question.supply);
     let mut best = Best::new(question.objective, question.top);
     let mut counts = Counts::default();
-    let mut open: Option<i64> = None;
     if question.top == 1 && capped_elsewhere(question) {
-        // The best build by the other objective is the first that the cap can allow: none there, none at all.
-        let objective = match question.objective {
-            Objective::Cost => Objective::Heat,
-            Objective::Heat => Objective::Cost,
-        };
-        let mut supply = question.supply.clone();
-        match objective {
-            Objective::Heat => supply.caps.cost = None,
-            Objective::Cost => supply.caps.heat_w = None,
-        }
+        // The best build by the other objective is the first that the cap can allow: none there, none at all. It may
+        // take half of the time; what it finds is a build to start with.
         let other = Question {
-            supply: &supply,
-            objective,
+            objective: question.objective.other(),
+            stop: question.stop.half(),
             ..question.clone()
         };
-        let first = optimise(&other)?;
-        counts = first.counts;
-        if first.builds.is_empty() && first.proof == Proof::Proved {
+        let mut first = Best::new(other.objective, 1);
+        let open = search_all(&other, &mut first, &mut counts);
+        let found = first.into_builds();
+        if found.is_empty() && open.is_none() {
             return Ok(Outcome {
-                builds: Vec::new(),
+                builds: found,
                 proof: Proof::Proved,
                 counts,
             });
         }
+        found.into_iter().for_each(|found| best.offer_found(found));
     }
-    for in_rail in placements(question) {
-        let must = Must {
-            without: question.without.clone(),
-            named: question.with.iter().map(|&(part, _)| part).collect(),
-            in_rail,
-        };
-        if let End::Stopped { bound } = search(&site, question, &must, &mut best, &mut counts) {
-            open = Some(open.map_or(bound, |so_far| so_far.min(bound)));
-        }
-    }
+    let open = search_all(question, &mut best, &mut counts);
     let builds = best.into_builds();
     for found in &builds {
         judge(question.supply, &found.build)?;
@@ -143,6 +126,23 @@ pub fn optimise<'c>(question: &Question<'c>) -> Result<Outcome<'c>, Disagreement
         }
     };
     Ok(Outcome { builds, proof, counts })
+}
+
+/// Searches every placement of the demanded parts; the least bound of those that were stopped, if any was.
+fn search_all<'c>(question: &Question<'c>, best: &mut Best<'c>, counts: &mut Counts) -> Option<i64> {
+    let site = Site::new(question.supply);
+    let mut open: Option<i64> = None;
+    for in_rail in placements(question) {
+        let must = Must {
+            without: question.without.clone(),
+            named: question.with.iter().map(|&(part, _)| part).collect(),
+            in_rail,
+        };
+        if let End::Stopped { bound } = search(&site, question, &must, best, counts) {
+            open = Some(open.map_or(bound, |so_far| so_far.min(bound)));
+        }
+    }
+    open
 }
 
 /// Whether a cap binds what the objective does not minimise.

@@ -79,7 +79,11 @@ pub(super) fn search<'c>(
         if stop.now() {
             return End::Stopped { bound: passed + 1 };
         }
-        let mut run = Combine::new(question, &ready, &pool, best, counts, parts, reach).run(question.node_budget);
+        // Only the single best can be asked of the solver, and not of too many columns.
+        let columns: usize = pool.by_rail.iter().map(Vec::len).sum();
+        let may_ask = question.top == 1 && columns <= MOST_SOLVER_COLUMNS;
+        let budget = if may_ask { question.node_budget } else { u64::MAX };
+        let mut run = Combine::new(question, &ready, &pool, best, counts, parts, reach).run(budget);
         if run == Run::OutOfNodes {
             run = match ask_solver(question, &ready, &pool, best, counts, parts, reach) {
                 // What remains is to settle ties up to that build, or the solver has shown that there is none.
@@ -150,7 +154,8 @@ enum Said {
     Nothing,
 }
 
-/// Asks the solver for the best combination of the kept columns; only for the single best, which is all it can prove.
+/// Asks the solver for the best combination of the kept columns. A choice is judged again here; that there is none
+/// within reach is taken at the solver's word.
 fn ask_solver<'c>(
     question: &Question<'c>,
     ready: &[&[Ready<'c>]],
@@ -160,9 +165,6 @@ fn ask_solver<'c>(
     parts: usize,
     reach: i64,
 ) -> Said {
-    if question.top > 1 || pool.by_rail.iter().map(Vec::len).sum::<usize>() > MOST_SOLVER_COLUMNS {
-        return Said::Nothing;
-    }
     let columns: Vec<Vec<Column<'c>>> = (ready.iter().zip(&pool.by_rail))
         .map(|(ready, kept)| kept.iter().map(|k| ready[k.place].column.clone()).collect())
         .collect();

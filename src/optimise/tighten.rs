@@ -100,11 +100,6 @@ impl Uses {
     }
 }
 
-fn price(part: &Part, pieces: u64, in_all: u64, builds: u64) -> Money {
-    let most = in_all * builds;
-    part.unit_price(part.stock.map_or(most, |stock| most.min(stock))) * pieces
-}
-
 /// Price of a column when every other rail shares all that it can.
 fn floor(ready: &Ready, rail: usize, uses: &[Uses], builds: u64) -> i64 {
     let others = |part: &Part| -> u64 {
@@ -118,7 +113,7 @@ fn floor(ready: &Ready, rail: usize, uses: &[Uses], builds: u64) -> i64 {
     let parts: Money = ready
         .lines
         .iter()
-        .map(|&(part, q)| price(part, q, q + others(part), builds))
+        .map(|&(part, q)| part.least_cost(q, (q + others(part)) * builds))
         .sum();
     (parts + ready.column.pass.fitted_price).0
 }
@@ -138,7 +133,7 @@ fn shared_bound(ready: &Ready, rail: usize, uses: &[Uses], builds: u64) -> i64 {
     let mut alone = ready.column.pass.fitted_price;
     let mut gaining: Vec<Gaining> = Vec::new();
     for &(part, pieces) in &ready.lines {
-        let own = price(part, pieces, pieces, builds);
+        let own = part.least_cost(pieces, pieces * builds);
         alone = alone + own;
         let id = part.id.0 as usize;
         let sharing: Vec<(u64, i64)> = (uses.iter().enumerate())
@@ -146,7 +141,7 @@ fn shared_bound(ready: &Ready, rail: usize, uses: &[Uses], builds: u64) -> i64 {
             .map(|(_, u)| u.by_part[id])
             .collect();
         let all: u64 = sharing.iter().map(|&(most, _)| most).sum();
-        if price(part, pieces, pieces + all, builds) < own {
+        if part.least_cost(pieces, (pieces + all) * builds) < own {
             gaining.push(Gaining {
                 part,
                 pieces,
@@ -156,31 +151,28 @@ fn shared_bound(ready: &Ready, rail: usize, uses: &[Uses], builds: u64) -> i64 {
         }
     }
     let share = i64::try_from(gaining.len()).unwrap_or(1).max(1);
-    let gains: i64 = gaining
-        .iter()
-        .map(
-            |Gaining {
-                 part,
-                 pieces,
-                 own,
-                 sharing,
-             }| {
-                let gain =
-                    |more: u64, extra: i64| own.0 - price(part, *pieces, pieces + more, builds).0 - extra / share;
-                if sharing.len() > MOST_SUBSET_RAILS {
-                    let least = sharing.iter().map(|&(_, extra)| extra).min().unwrap_or(0);
-                    return gain(sharing.iter().map(|&(most, _)| most).sum(), least).max(0);
-                }
-                let subset = |set: u32| {
-                    let within = sharing.iter().enumerate().filter(|&(k, _)| set & (1 << k) != 0);
-                    let (more, extra) = within.fold((0, 0), |(more, extra), (_, &(most, e))| {
-                        (more + most, extra + e / share)
-                    });
-                    gain(more, extra * share)
-                };
-                (0..1_u32 << sharing.len()).map(subset).max().unwrap_or(0)
-            },
-        )
-        .sum();
-    alone.0 - gains
+    alone.0 - gaining.iter().map(|part| part.most_gain(share, builds)).sum::<i64>()
+}
+
+impl Gaining<'_> {
+    /// The most that sharing this part can save, each rail charged 1/`share` of what it pays for it (rounded down,
+    /// which only lets more through).
+    fn most_gain(&self, share: i64, builds: u64) -> i64 {
+        let gain = |more: u64, charged: i64| {
+            self.own.0 - self.part.least_cost(self.pieces, (self.pieces + more) * builds).0 - charged
+        };
+        if self.sharing.len() > MOST_SUBSET_RAILS {
+            // Whoever shares, at least one rail pays, and no more pieces than all of them can join.
+            let least = self.sharing.iter().map(|&(_, extra)| extra / share).min().unwrap_or(0);
+            return gain(self.sharing.iter().map(|&(most, _)| most).sum(), least).max(0);
+        }
+        let subset = |set: u32| {
+            let within = self.sharing.iter().enumerate().filter(|&(k, _)| set & (1 << k) != 0);
+            let (more, charged) = within.fold((0, 0), |(more, charged), (_, &(most, extra))| {
+                (more + most, charged + extra / share)
+            });
+            gain(more, charged)
+        };
+        (0..1_u32 << self.sharing.len()).map(subset).max().unwrap_or(0)
+    }
 }

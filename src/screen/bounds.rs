@@ -11,6 +11,11 @@ use crate::physics::raw_section::RawSection;
 /// Rounding slack on bounds: they may let through what fails, never the reverse.
 const SLACK: f64 = 1e-9;
 
+/// The lowest valley that the audit still lets pass for a wanted one.
+pub(super) fn let_through_v(level_v: f64) -> f64 {
+    level_v - 2.0 * SLACK * level_v.abs().max(1.0)
+}
+
 /// Whether the source can deliver the load at all while the raw voltage stays at `level_v` or above.
 ///
 /// Bound: with v >= level, i <= (v_s - drop - level)+/R at every instant, so its mean must reach the load:

@@ -38,6 +38,15 @@ impl Objective {
         }
     }
 
+    /// The other one.
+    #[must_use]
+    pub fn other(self) -> Objective {
+        match self {
+            Objective::Cost => Objective::Heat,
+            Objective::Heat => Objective::Cost,
+        }
+    }
+
     /// Orders a (cost, heat) pair of integers by this objective.
     #[must_use]
     pub fn order(self, cost: i64, heat: i64) -> (i64, i64) {

@@ -25,6 +25,6 @@ impl FloorPrices {
     pub fn cost(&self, part: &Part, pieces: u64) -> Money {
         let here = if part.slot == Slot::Sink { 2 } else { pieces };
         let most = (here + self.elsewhere[part.id.0 as usize]) * self.builds;
-        part.unit_price(part.stock.map_or(most, |stock| most.min(stock))) * pieces
+        part.least_cost(pieces, most)
     }
 }

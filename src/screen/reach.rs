@@ -3,7 +3,7 @@
 
 use std::sync::Arc;
 
-use super::bounds::{least_rms_a, source_reaches};
+use super::bounds::{least_rms_a, let_through_v, source_reaches};
 use super::shelf::Shelf;
 use crate::audit::{Check, Corner, Known, Site, Stage, core_w, rectifier, reservoir, transformer};
 use crate::build::{Hookup, diodes_in_path, hookups, pieces_of_rectifier, sink_takes};
@@ -174,7 +174,7 @@ fn feeds(site: &Site, source: &Source, stage: &Stage) -> bool {
         return false;
     };
     holds
-        && source_reaches(&low, level_v)
+        && source_reaches(&low, let_through_v(level_v))
         && carries(
             source.transformer,
             &source.hookup,

@@ -60,6 +60,10 @@ impl Solved {
 
     /// Whether any of these devices, all with at least this load, can still stand behind the section. As the load
     /// rises, the valley falls and the source current rises at every instant: what fails here stays so.
+    ///
+    /// Proof: let u be the capacitor voltage less ESR I (constant load I). Then C u' = (v_s - drop - u)+/(R + ESR) - I,
+    /// so more I lowers u at every instant of the periodic state and raises i = (v_s - drop - u)+/(R + ESR); and the
+    /// raw voltage u + ESR i rises with u, so its valley falls. More crest, less R or less drop raise u the same way.
     pub(super) fn hope<'x>(
         &mut self,
         site: &Site,

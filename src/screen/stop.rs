@@ -14,6 +14,16 @@ pub struct Stop {
 }
 
 impl Stop {
+    /// The same with half of the time that is left.
+    #[must_use]
+    pub fn half(&self) -> Stop {
+        let half = |at: Instant| Instant::now() + at.saturating_duration_since(Instant::now()) / 2;
+        Stop {
+            deadline: self.deadline.map(half),
+            asked: Arc::clone(&self.asked),
+        }
+    }
+
     /// Whether to give up now.
     #[must_use]
     pub fn now(&self) -> bool {

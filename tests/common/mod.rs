@@ -1,5 +1,5 @@
 //! What several test files need: seeded random numbers and closeness with a message.
-#![allow(dead_code)]
+#![allow(dead_code, unreachable_pub)]
 
 /// xorshift64*: small, seeded, the same on every machine.
 pub struct Random(u64);

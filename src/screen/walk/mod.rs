@@ -14,7 +14,7 @@ use crate::audit::{Check, Corner, Known, Raw, SectionHeat, Site, Stage, rectifie
 use crate::build::pieces_of_rectifier;
 use crate::catalogue::{Rectifier, Sink};
 use crate::physics::winding::WindingLoad;
-use crate::screen::bounds::{least_bank_f, least_rms_a, source_reaches};
+use crate::screen::bounds::{least_bank_f, least_rms_a, let_through_v, source_reaches};
 use crate::screen::column::Column;
 use crate::screen::prices::FloorPrices;
 use crate::screen::reach::{Reach, Source, bare_circuit, carries};
@@ -233,8 +233,8 @@ impl<'s, 'c> Walk<'s, 'c> {
         let least = |f: &dyn Fn(&Stage) -> Known<f64>| stages().filter_map(|s| f(s).ok()).min_by(f64::total_cmp);
         let (Some(load_a), Some(level_v), Some(floor_v)) = (
             least(&|s| s.load_a()),
-            least(&|s| s.valley_wanted_v(self.site)),
-            least(&|s| s.floor_v),
+            least(&|s| s.valley_wanted_v(self.site).map(let_through_v)),
+            least(&|s| s.floor_v.map(let_through_v)),
         ) else {
             return;
         };
@@ -254,7 +254,9 @@ impl<'s, 'c> Walk<'s, 'c> {
                     && reservoir::voltage(self.site, bank.can, source.idle_v).met()
             })
             .collect();
-        // At the high corner the voltage behind the bank's resistance lies above that of the low corner, which is at
+        // At the high corner u (see Solved::hope) lies above that of the low corner: more crest, less drop, and its
+        // least value rises with C. (Were it lower with more C, start the smaller bank at that least value: it ends the
+        // period no higher than it began, though below its own periodic state it must rise.) At the low corner u is at
         // least the wanted valley less what the load drops in the aged resistance.
         let esr_ohm = (banks_that_do.iter())
             .map(|&(b, _)| self.shelf.banks[b])
