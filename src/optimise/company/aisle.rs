@@ -2,83 +2,14 @@
 
 use std::rc::Rc;
 
+use super::bound::{Bound, SLACK, Span};
 use super::ledger::Company;
-use crate::audit::{Check, Corner, Known, Limit, Raw, Site, Stage, core_w, rectifier, reservoir, transformer, whole};
+use crate::audit::{Corner, Raw, Site, Stage, core_w, rectifier, reservoir, transformer, whole};
 use crate::build::{Hookup, device_serves, hookups, pieces_of_rectifier, sink_takes};
 use crate::catalogue::{Part, PartId, Rectifier, RectifierKind, Reservoir, Sink, Status, Transformer};
 use crate::optimise::Question;
 use crate::supply::Path;
 use crate::units::Money;
-
-/// Rounding slack on solved bounds: they may let through what is of no interest, never the reverse.
-pub(super) const SLACK: f64 = 1e-8;
-
-/// Upper bound on the least tightness of all builds with some parts in common.
-#[derive(Debug, Clone, Copy, PartialEq)]
-pub(super) struct Bound {
-    /// By the limits that are judged in any case.
-    pub(super) any: f64,
-    /// By the limits that are judged unless the section collapses.
-    pub(super) held: f64,
-}
-
-/// Lower bounds on what a section with a device loses, or the losses themselves; minus infinity: not known.
-#[derive(Debug, Clone, Copy)]
-pub(super) struct Losses {
-    /// In one package of the rectifier.
-    pub(super) package_w: f64,
-    /// In the device.
-    pub(super) pass_w: f64,
-}
-
-impl Bound {
-    pub(super) const NONE: Bound = Bound {
-        any: f64::INFINITY,
-        held: f64::INFINITY,
-    };
-
-    pub(super) fn and(self, other: Bound) -> Bound {
-        Bound {
-            any: self.any.min(other.any),
-            held: self.held.min(other.held),
-        }
-    }
-
-    pub(super) fn any(self, check: impl Into<Option<Check>>) -> Bound {
-        let tightness = check.into().map_or(f64::INFINITY, |c| c.tightness());
-        Bound {
-            any: self.any.min(tightness),
-            ..self
-        }
-    }
-
-    pub(super) fn held(self, check: impl Into<Option<Check>>) -> Bound {
-        let tightness = check.into().map_or(f64::INFINITY, |c| c.tightness());
-        Bound {
-            held: self.held.min(tightness),
-            ..self
-        }
-    }
-
-    /// With a value that every build needs: where a cell of it is blank no section is solved, so none collapses, and
-    /// limits fail as unknown in any case.
-    fn knows<T>(self, value: Known<T>) -> Bound {
-        match value {
-            Ok(_) => self,
-            Err(column) => self.any(Check::new(Limit::Collapse, None, Err(column), Ok(1.0))),
-        }
-    }
-
-    /// Of builds of which a collapsed one has tightness `collapse` (minus infinity: none collapses).
-    pub(super) fn least(self, collapse: f64) -> f64 {
-        self.any.min(self.held.max(collapse))
-    }
-}
-
-/// What a collapsed section leaves to judge.
-pub(super) fn collapse() -> Check {
-    Check::new(Limit::Collapse, None, Ok(0.0), Ok(1.0))
-}
 
 /// A transformer hook-up with a path.
 pub(super) struct Source<'c> {
@@ -151,28 +82,6 @@ impl Sinks {
             .collect();
         best.sort_by(|&a, &b| ohmic(a).total_cmp(&ohmic(b)).then(a.cmp(&b)));
         Sinks { all, best }
-    }
-}
-
-/// Least and most of something over all parts that state it.
-#[derive(Debug, Clone, Copy, PartialEq)]
-pub(super) struct Span {
-    pub(super) least: f64,
-    pub(super) most: f64,
-}
-
-impl Span {
-    pub(super) fn over(values: impl Iterator<Item = f64>) -> Option<Span> {
-        values.fold(None, |span, value| {
-            let span = span.unwrap_or(Span {
-                least: value,
-                most: value,
-            });
-            Some(Span {
-                least: span.least.min(value),
-                most: span.most.max(value),
-            })
-        })
     }
 }
 
@@ -339,7 +248,6 @@ impl<'s, 'c: 's> Aisle<'s, 'c> {
     }
 
     /// Price of transformer, bank and rectifiers.
-    #[inline(never)]
     pub(super) fn section_price(&self, source: usize, bank: usize, rectifier: usize) -> Money {
         self.price(&self.sources[source].transformer.part, 1)
             + self.price(&self.rectifiers[rectifier].part.part, self.pieces(source, rectifier))
@@ -352,7 +260,6 @@ impl<'s, 'c: 's> Aisle<'s, 'c> {
     }
 
     /// What a rectifier leaves behind a source, whatever the rest.
-    #[inline(never)]
     pub(super) fn behind(&self, source: usize, rectifier: usize) -> Bound {
         let (source, diodes) = (&self.sources[source], &self.rectifiers[rectifier]);
         let pieces = pieces_of_rectifier(diodes.part.kind, source.path);
@@ -368,7 +275,6 @@ impl<'s, 'c: 's> Aisle<'s, 'c> {
     }
 
     /// What a bank leaves behind a source, whatever the rest.
-    #[inline(never)]
     pub(super) fn fed_by(&self, source: usize, bank: usize) -> Bound {
         let (source, bank) = (&self.sources[source], &self.banks[bank]);
         let wear = reservoir::wear(self.site, bank.can, source.path, Ok(0.0));

@@ -60,7 +60,6 @@ impl<'a, 's> Cooling<'a, 's> {
     }
 
     /// Upper bound on the tightness of a device's junction, and of what its sink fails by itself, with the best sink.
-    #[inline(never)]
     pub(super) fn best(&self, device: usize, loss_w: f64) -> f64 {
         if !(0.0..MOST_W).contains(&loss_w) {
             return f64::INFINITY;
@@ -99,7 +98,6 @@ impl<'a, 's> Cooling<'a, 's> {
     }
 
     /// Whether a device with that loss can be less tight than `need` on one of its sinks, by place among them.
-    #[inline(never)]
     pub(super) fn device_bears(&self, device: usize, place: usize, need: f64, loss_w: f64) -> bool {
         let sink = &self.aisle.sinks[self.aisle.devices[device].sinks.all[place]];
         let junction = |w: f64| self.device(device, w, Some(sink.part)).tightness();
@@ -107,7 +105,6 @@ impl<'a, 's> Cooling<'a, 's> {
     }
 
     /// The same for a rectifier.
-    #[inline(never)]
     pub(super) fn rectifier_bears(&self, rectifier: usize, place: usize, need: f64, loss_w: f64) -> bool {
         let sink = &self.aisle.sinks[self.aisle.rectifiers[rectifier].sinks.all[place]];
         let junction = |w: f64| self.rectifier(rectifier, w, Some(sink.part)).tightness();

@@ -1,9 +1,13 @@
 //! Owns what cannot hold together: the limits of the whole supply that stand between rails which each pass alone.
 
+use std::collections::BTreeMap;
+
 use crate::audit::{Limit, whole};
 use crate::build::Build;
 use crate::catalogue::{Catalogue, Part, PartId};
 use crate::optimise::{Disagreement, Proof, Question, optimise};
+use crate::screen::Objective;
+use crate::supply::Supply;
 
 /// A limit that cannot hold together with the rest.
 #[derive(Debug, Clone, PartialEq, Eq, PartialOrd, Ord)]
@@ -17,11 +21,17 @@ pub struct Joint {
 /// Each limit of cost, heat and stock without which the supply has a build; if there is none, each that is among the
 /// fewest that must go together. And whether all of that is proved.
 pub(super) fn joint(question: &Question) -> Result<(Vec<Joint>, bool), Disagreement> {
-    let (caps, parts) = (&question.supply.caps, question.catalogue.parts());
+    let caps = &question.supply.caps;
     let mut limits = Vec::new();
     limits.extend(caps.cost.map(|_| Limit::Cost));
     limits.extend(caps.heat_w.map(|_| Limit::Heat));
-    limits.extend({ parts }.any(|p| p.stock.is_some()).then_some(Limit::Stock));
+    limits.extend(
+        question
+            .catalogue
+            .parts()
+            .any(|p| p.stock.is_some())
+            .then_some(Limit::Stock),
+    );
     let mut proved = true;
     let mut found: Vec<Joint> = Vec::new();
     for size in 1..=limits.len() {
@@ -82,7 +92,7 @@ enum Answer {
 
 /// A question with limits lifted.
 struct Changed {
-    supply: crate::supply::Supply,
+    supply: Supply,
     catalogue: Catalogue,
 }
 
@@ -117,6 +127,12 @@ impl Changed {
             supply: &self.supply,
             catalogue: &self.catalogue,
             top: 1,
+            // The search ends where the cap on what it minimises is passed.
+            objective: match (self.supply.caps.cost, self.supply.caps.heat_w) {
+                (Some(_), _) => Objective::Cost,
+                (None, Some(_)) => Objective::Heat,
+                (None, None) => question.objective,
+            },
             ..question.clone()
         })?;
         let Some(best) = outcome.builds.first() else {
@@ -130,7 +146,7 @@ impl Changed {
 }
 
 fn short(question: &Question, build: &Build) -> Vec<PartId> {
-    let stock: std::collections::BTreeMap<PartId, &Part> = question.catalogue.parts().map(|p| (p.id, p)).collect();
+    let stock: BTreeMap<PartId, &Part> = question.catalogue.parts().map(|p| (p.id, p)).collect();
     (build.lines(question.supply).iter())
         .filter_map(|line| Some((stock.get(&line.part.id)?, line.qty)))
         .filter(|(part, qty)| whole::stock(question.supply, part, *qty).is_some_and(|c| !c.met()))

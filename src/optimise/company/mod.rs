@@ -5,10 +5,11 @@
 //! least tightness is greatest. Invariant: exact, by the audit's own functions; bounds only say what need not be solved.
 
 mod aisle;
-mod bounds;
+mod bound;
 mod cooling;
 mod joint;
 mod ledger;
+mod outlook;
 mod search;
 mod settle;
 mod worth;

@@ -9,10 +9,11 @@ use std::cmp::Ordering;
 use std::collections::BinaryHeap;
 use std::rc::Rc;
 
-use super::aisle::{Aisle, Bound, Losses, collapse};
-use super::bounds::{Enclosure, Fed, Outlooks};
+use super::aisle::Aisle;
+use super::bound::{Bound, Losses, collapse};
 use super::cooling::Cooling;
 use super::ledger::Ledger;
+use super::outlook::{Enclosure, Fed, Outlooks};
 use super::worth::{Floors, Spot};
 use crate::audit::whole;
 use crate::catalogue::PartId;
@@ -135,7 +136,6 @@ impl<'a, 's> Search<'a, 's> {
     }
 
     /// Lists the banks behind a source.
-    #[inline(never)]
     fn open_source(&mut self, place: usize) {
         let aisle = self.aisle;
         let transformer = &aisle.sources[place].transformer.part;
@@ -168,7 +168,6 @@ impl<'a, 's> Search<'a, 's> {
     }
 
     /// Lists the rectifiers between a source and a bank.
-    #[inline(never)]
     fn open_fed(&mut self, place: usize) {
         let fed = Rc::clone(&self.fed[place]);
         let collapse = fed.enclosure.collapse;
@@ -200,7 +199,6 @@ impl<'a, 's> Search<'a, 's> {
     }
 
     /// Lowers the bound of a section by what its rectifier shows before anything of it is solved.
-    #[inline(never)]
     fn look_closer(&mut self, place: usize, rectifier: usize) {
         let fed = Rc::clone(&self.fed[place]);
         let section = self.section_bound(&fed, rectifier);
@@ -208,7 +206,7 @@ impl<'a, 's> Search<'a, 's> {
         if section.least(fed.enclosure.collapse) <= need.min(self.floors.devices).min(self.floors.sinks) {
             return;
         }
-        let spot = self.spot(&fed, rectifier, section, &fed.enclosure);
+        let spot = self.spot(&fed, rectifier, None);
         let mut hopeful: Vec<(Bound, Losses, usize)> = (0..self.aisle.devices.len())
             .map(|device| {
                 let (bound, losses) = self.outlooks.behind(&fed, &spot.outlook, device);
@@ -230,27 +228,20 @@ impl<'a, 's> Search<'a, 's> {
         }
     }
 
-    /// A section to look at; `section` is what source, bank and rectifier leave by themselves.
-    #[inline(never)]
-    pub(super) fn spot<'f>(
-        &self,
-        fed: &'f Fed,
-        rectifier: usize,
-        section: Bound,
-        enclosure: &'f Enclosure,
-    ) -> Spot<'f> {
+    /// A section to look at; `own`: what encloses just its sections.
+    pub(super) fn spot<'f>(&self, fed: &'f Fed, rectifier: usize, own: Option<&'f Enclosure>) -> Spot<'f> {
+        let section = self.section_bound(fed, rectifier);
         let mut spot = Spot {
             fed,
             rectifier,
-            outlook: self.outlooks.with(fed, rectifier, section, enclosure),
+            outlook: self.outlooks.with(fed, rectifier, section, own),
         };
         spot.outlook.bound = self.coolest(&spot, spot.outlook.bound, spot.outlook.package_w);
         spot
     }
 
     /// What source, bank and rectifier leave by themselves.
-    #[inline(never)]
-    pub(super) fn section_bound(&self, fed: &Fed, rectifier: usize) -> Bound {
+    fn section_bound(&self, fed: &Fed, rectifier: usize) -> Bound {
         let aisle = self.aisle;
         let cost = aisle.section_price(fed.source, fed.bank, rectifier) + aisle.device_price;
         fed.bound

@@ -1,8 +1,8 @@
 //! Owns the exact verdict on one section with each of its devices and sinks, by the audit's functions.
 
-use super::aisle::{Bound, Losses, SLACK, collapse};
-use super::bounds::Fed;
+use super::bound::{Bound, Losses, SLACK, collapse};
 use super::ledger::Company;
+use super::outlook::Fed;
 use super::search::Search;
 use super::worth::Spot;
 use crate::audit::{
@@ -34,14 +34,13 @@ impl Search<'_, '_> {
     /// Settles every build of a section that can better one of its parts.
     ///
     /// Devices come by load. A greater load lowers the raw voltage and raises the currents of source and bank (see
-    /// `bounds`), so what a lighter one shows bounds the rest, and a section that has collapsed stays so.
-    #[inline(never)]
+    /// `outlook`), so what a lighter one shows bounds the rest, and a section that has collapsed stays so.
     pub(super) fn settle_section(&mut self, fed: &Fed, rectifier: usize) {
         let aisle = self.aisle;
         let diodes = &aisle.rectifiers[rectifier];
         let raw = aisle.raw(fed.source, fed.bank, diodes.part);
         let enclosure = self.outlooks.section(fed, rectifier);
-        let spot = self.spot(fed, rectifier, self.section_bound(fed, rectifier), &enclosure);
+        let spot = self.spot(fed, rectifier, Some(&enclosure));
         let mut collapsed = enclosure.collapses && diodes.threshold_v.is_some() && aisle.banks[fed.bank].known;
         let mut solved: Option<Solved> = None;
         for (place, device) in aisle.devices.iter().enumerate() {
@@ -134,7 +133,6 @@ impl Search<'_, '_> {
     }
 
     /// All limits, sinks aside; `None` as soon as they leave nothing of interest.
-    #[inline(never)]
     fn judge(
         &self,
         spot: &Spot,
@@ -222,7 +220,6 @@ impl Search<'_, '_> {
     }
 
     /// Offers every choice of sinks that can better a part; `heating`: `None` when the section collapses.
-    #[inline(never)]
     fn settle(&mut self, spot: &Spot, device: usize, company: Company, heating: Option<Heating>) {
         let (aisle, fed, rectifier) = (self.aisle, spot.fed, spot.rectifier);
         let (site, supply) = (aisle.site, aisle.site.supply);

@@ -1,7 +1,7 @@
 //! Owns what is worth a look: whether a build of some bound can better the best company of any part that it may hold.
 
-use super::aisle::{Bound, Losses};
-use super::bounds::{Fed, Outlook};
+use super::bound::{Bound, Losses};
+use super::outlook::{Fed, Outlook};
 use super::search::Search;
 use crate::audit::Check;
 use crate::catalogue::PartId;
@@ -61,7 +61,6 @@ impl Search<'_, '_> {
 
     /// What a build of that bound, in which the rectifier has its best sink, can reach at most for a part of it whose
     /// best company it can better; `None`: there is no such part.
-    #[inline(never)]
     pub(super) fn wanted(&self, spot: &Spot, device: usize, bound: Bound, losses: Losses) -> Option<Bound> {
         let (aisle, rectifier) = (self.aisle, spot.rectifier);
         let section = self.need(&self.parts(spot.fed, rectifier));
@@ -106,7 +105,6 @@ impl Search<'_, '_> {
     }
 
     /// With the best sink for a rectifier of which a package loses so much.
-    #[inline(never)]
     pub(super) fn coolest(&self, spot: &Spot, bound: Bound, package_w: f64) -> Bound {
         if package_w < 0.0 {
             return bound;

@@ -15,7 +15,8 @@
 
 use std::collections::BTreeMap;
 
-use super::aisle::{Aisle, Bound, Losses, SLACK, Span, collapse};
+use super::aisle::Aisle;
+use super::bound::{Bound, End, Losses, SLACK, Span, collapse};
 use crate::audit::{Check, Corner, Limit, Raw, SectionHeat, rectifier, reservoir, transformer, whole};
 use crate::build::{diodes_in_path, pieces_of_rectifier};
 use crate::catalogue::{Forward, Rectifier};
@@ -96,10 +97,9 @@ impl<'a, 's> Outlooks<'a, 's> {
     }
 
     /// All sections with that bank behind that source; `bound` is what both leave by themselves.
-    #[inline(never)]
     pub(super) fn fed(&self, source: usize, bank: usize, bound: Bound) -> Fed {
         let raw = self.aisle.raw(source, bank, &self.bare);
-        let enclosure = self.enclosure(&raw, self.forwards.get(&raw.path));
+        let enclosure = self.enclosure(&raw, self.forwards.get(&raw.path), false);
         Fed {
             source,
             bank,
@@ -109,16 +109,15 @@ impl<'a, 's> Outlooks<'a, 's> {
     }
 
     /// All sections with that rectifier, which differ in the load alone.
-    #[inline(never)]
     pub(super) fn section(&self, fed: &Fed, rectifier: usize) -> Enclosure {
         let raw = self.aisle.raw(fed.source, fed.bank, &self.bare);
         let part = self.aisle.rectifiers[rectifier].part;
-        self.enclosure(&raw, forwards(self.aisle, std::iter::once(part)).as_ref())
+        let stands = fed.enclosure.collapse == f64::NEG_INFINITY;
+        self.enclosure(&raw, forwards(self.aisle, std::iter::once(part)).as_ref(), stands)
     }
 
-    /// Solves the ends; `raw` has no threshold and slope of its own.
-    #[inline(never)]
-    fn enclosure(&self, raw: &Raw, forwards: Option<&Forwards>) -> Enclosure {
+    /// Solves the ends; `raw` has no threshold and slope of its own, and `stands`: none is known to collapse.
+    fn enclosure(&self, raw: &Raw, forwards: Option<&Forwards>, stands: bool) -> Enclosure {
         let mut enclosure = Enclosure {
             collapse: collapse().tightness(),
             collapses: false,
@@ -128,7 +127,7 @@ impl<'a, 's> Outlooks<'a, 's> {
             return enclosure;
         };
         let diodes = diodes_in_path(raw.path);
-        let solve = |corner, load_a, slope: fn(Span) -> f64| {
+        let solve = |corner, load_a, slope: End| {
             let own = [WindingLoad {
                 volts_v: raw.hookup.volts_v,
                 load_a,
@@ -136,16 +135,14 @@ impl<'a, 's> Outlooks<'a, 's> {
             let bare = raw.circuit(self.aisle.site, corner, Ok(load_a), Ok(&own)).ok()?;
             let [threshold_v, slope_ohm] = forwards[usize::from(corner != Corner::Low)];
             let section = RawSection {
-                series_ohm: bare.series_ohm + diodes * slope(slope_ohm),
+                series_ohm: bare.series_ohm + diodes * slope_ohm.at(slope),
                 drop_v: diodes * threshold_v.least,
                 ..bare
             };
             let more_v = diodes * (threshold_v.most - threshold_v.least);
             Some((steady_state(&section), section.drop_v, more_v))
         };
-        let least: fn(Span) -> f64 = |span| span.least;
-        let most: fn(Span) -> f64 = |span| span.most;
-        let Some((kind, drop_v, _)) = solve(Corner::Low, load_a.least, least) else {
+        let Some((kind, drop_v, _)) = solve(Corner::Low, load_a.least, End::Least) else {
             return enclosure;
         };
         let Some(kind) = kind else {
@@ -153,13 +150,13 @@ impl<'a, 's> Outlooks<'a, 's> {
             return enclosure;
         };
         let hard = |corner| {
-            let (wave, drop_v, more_v) = solve(corner, load_a.most, most)?;
+            let (wave, drop_v, more_v) = solve(corner, load_a.most, End::Most)?;
             wave.map(|wave| (wave, drop_v, wave.valley_v() * (1.0 - SLACK) - SLACK > more_v))
         };
-        let (hard_low, hard_high) = (hard(Corner::Low), hard(Corner::High));
-        let stands = |hard: &Option<(_, _, bool)>| hard.as_ref().is_some_and(|&(_, _, stands)| stands);
-        if stands(&hard_low) && stands(&hard_high) {
-            // At worn the source is stronger than at low, on the same bank.
+        let hard_high = hard(Corner::High);
+        let holds = |hard: &Option<(_, _, bool)>| hard.as_ref().is_some_and(|&(_, _, holds)| holds);
+        // At worn the source is stronger than at low, on the same bank.
+        if stands || (holds(&hard_high) && holds(&hard(Corner::Low))) {
             enclosure.collapse = f64::NEG_INFINITY;
         }
         enclosure.ends = Some(Ends {
@@ -168,13 +165,12 @@ impl<'a, 's> Outlooks<'a, 's> {
                 let loss_w = self.aisle.devices.iter().map(|device| device.stage.loss_w(Ok(&wave)));
                 (loss_w.map(|w| w.unwrap_or(f64::NEG_INFINITY)).collect(), drop_v)
             }),
-            calm: solve(Corner::High, load_a.least, most).and_then(|(wave, _, _)| wave),
+            calm: solve(Corner::High, load_a.least, End::Most).and_then(|(wave, _, _)| wave),
         });
         enclosure
     }
 
     /// What the least rms currents leave of transformer and bank.
-    #[inline(never)]
     fn carried(&self, raw: &Raw, enclosure: &Enclosure) -> Bound {
         if enclosure.collapses {
             return Bound::NONE.held(collapse());
@@ -192,7 +188,6 @@ impl<'a, 's> Outlooks<'a, 's> {
     }
 
     /// Whatever the rectifier.
-    #[inline(never)]
     pub(super) fn with_any<'e>(&self, fed: &'e Fed) -> Outlook<'e> {
         let source = &self.aisle.sources[fed.source];
         Outlook {
@@ -206,23 +201,27 @@ impl<'a, 's> Outlooks<'a, 's> {
         }
     }
 
-    /// With a rectifier; `bound` is what it leaves with source and bank, and the enclosure theirs or its own.
-    #[inline(never)]
-    pub(super) fn with<'e>(&self, fed: &Fed, rectifier: usize, bound: Bound, enclosure: &'e Enclosure) -> Outlook<'e> {
+    /// With a rectifier; `bound` is what it leaves with source and bank, `own` what encloses just its sections.
+    pub(super) fn with<'e>(
+        &self,
+        fed: &'e Fed,
+        rectifier: usize,
+        bound: Bound,
+        own: Option<&'e Enclosure>,
+    ) -> Outlook<'e> {
         let aisle = self.aisle;
         let source = &aisle.sources[fed.source];
         let diodes = &aisle.rectifiers[rectifier];
         let raw = aisle.raw(fed.source, fed.bank, diodes.part);
+        let enclosure = own.unwrap_or(&fed.enclosure);
+        let carried = own.map_or(Bound::NONE, |own| self.carried(&raw, own));
         let mut outlook = Outlook {
             enclosure,
-            bound: bound.held(rectifier::surge(aisle.site, &raw)),
+            bound: bound.and(carried).held(rectifier::surge(aisle.site, &raw)),
             package_w: f64::NEG_INFINITY,
             drop_v: diodes.threshold_v.map(|v| v.map(|v| diodes_in_path(source.path) * v)),
             heat_w: source.core_w,
         };
-        if !std::ptr::eq(enclosure, &raw const fed.enclosure) {
-            outlook.bound = outlook.bound.and(self.carried(&raw, enclosure));
-        }
         if let Some((wave, load_a)) = enclosure.calm().zip(aisle.load_a) {
             let current = rectifier::current(&raw, Ok(wave)).tightness() + SLACK;
             outlook.bound.held = outlook.bound.held.min(current);
@@ -239,7 +238,6 @@ impl<'a, 's> Outlooks<'a, 's> {
     }
 
     /// With a device behind it; and the least losses.
-    #[inline(never)]
     pub(super) fn behind(&self, fed: &Fed, outlook: &Outlook, device: usize) -> (Bound, Losses) {
         let (site, stage) = (self.aisle.site, &self.aisle.devices[device].stage);
         let mut bound = outlook.bound.and(self.aisle.sources[fed.source].behind[device]);
