@@ -6,7 +6,7 @@
 
 use std::f64::consts::PI;
 
-use crate::physics::raw_section::RawSection;
+use crate::physics::raw_section::{RawSection, steady_state};
 
 /// Rounding slack on bounds: they may let through what fails, never the reverse.
 const SLACK: f64 = 1e-9;
@@ -64,4 +64,47 @@ pub(super) fn least_rms_a(section: &RawSection, level_v: f64) -> f64 {
     let period = if section.full_wave { PI } else { 2.0 * PI };
     let pulse = PI - 2.0 * ((section.drop_v + level_v.max(0.0)) / crest).clamp(0.0, 1.0).asin();
     section.load_a * (period / pulse.max(f64::MIN_POSITIVE)).sqrt() * (1.0 - SLACK)
+}
+
+/// Lower bound on the heat of a section and its device at the high corner, iron loss aside, for any bank.
+///
+/// Bound: let u be the voltage behind the bank's resistance (module head). Its peak is at least the level U that an
+/// endless bank would hold, else the source would give more than the load takes all the time; and it falls between
+/// pulses by at most I_L T/C. Current flows only while the source lies above u and the drop, so the source gives at
+/// least (U - I_L T/C + drop) I_L; all of it but the rail's own power is heat. U falls with the bank's resistance.
+pub(super) struct HeatBound {
+    level_v: f64,
+    drop_v: f64,
+    load_a: f64,
+    /// Seconds between pulses.
+    interval_s: f64,
+    rail_w: f64,
+}
+
+/// A bank that holds its voltage but for microvolts; its valley lies below that of an endless one.
+const ENDLESS_F: f64 = 1e3;
+
+impl HeatBound {
+    /// For a circuit without its bank, the highest series resistance of any bank, and the power that the rail takes.
+    pub(super) fn new(high: &RawSection, esr_ohm: f64, rail_w: f64) -> HeatBound {
+        let endless = RawSection {
+            series_ohm: high.series_ohm + esr_ohm,
+            bank_f: ENDLESS_F,
+            bank_esr_ohm: 0.0,
+            ..*high
+        };
+        HeatBound {
+            level_v: steady_state(&endless).map_or(0.0, |wave| wave.valley_v()),
+            drop_v: high.drop_v,
+            load_a: high.load_a,
+            interval_s: 1.0 / (high.mains_hz * if high.full_wave { 2.0 } else { 1.0 }),
+            rail_w,
+        }
+    }
+
+    /// With a bank of so much capacitance at the high corner.
+    pub(super) fn least_w(&self, bank_f: f64) -> f64 {
+        let level_v = (self.level_v - self.load_a * self.interval_s / bank_f).max(0.0);
+        ((level_v + self.drop_v) * self.load_a - self.rail_w) * (1.0 - SLACK)
+    }
 }

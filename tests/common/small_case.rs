@@ -8,7 +8,8 @@ use std::collections::BTreeSet;
 use std::fmt;
 
 use binrail::audit::audit;
-use binrail::catalogue::{Catalogue, Slot, columns, from_cells};
+use binrail::build::Build;
+use binrail::catalogue::{Catalogue, Slot, Status, columns, from_cells};
 use binrail::supply::{Supply, from_json};
 use serde_json::{Value, json};
 
@@ -118,8 +119,9 @@ impl Case {
             let (catalogue, supply) = (case.catalogue(), case.supply());
             let (each, _) = singles(&supply, &catalogue);
             let joint: usize = each.iter().map(Vec::len).product();
-            let least = if seed % 10 == 9 { 0 } else { LEAST_JOINT };
-            if !(least..=MOST_JOINT).contains(&joint) {
+            let sold = |build: &&Build| build.uses().all(|(part, _)| part.status != Status::Withdrawn);
+            let usual: usize = each.iter().map(|builds| builds.iter().filter(sold).count()).product();
+            if joint > MOST_JOINT || usual < LEAST_JOINT && seed % 10 != 9 {
                 continue;
             }
             if seed % 4 == 1 && joint > 0 {

@@ -13,8 +13,7 @@ use std::collections::BinaryHeap;
 use crate::audit::{Check, Corner, Known, Raw, SectionHeat, Site, Stage, rectifier, reservoir, whole};
 use crate::build::pieces_of_rectifier;
 use crate::catalogue::{Rectifier, Sink};
-use crate::physics::winding::WindingLoad;
-use crate::screen::bounds::{least_bank_f, least_rms_a, let_through_v, source_reaches};
+use crate::screen::bounds::{HeatBound, least_bank_f, least_rms_a, let_through_v, source_reaches};
 use crate::screen::column::Column;
 use crate::screen::prices::FloorPrices;
 use crate::screen::reach::{Reach, Source, bare_circuit, carries};
@@ -154,7 +153,7 @@ impl<'s, 'c> Walk<'s, 'c> {
             }
             self.heap.pop();
             match entry {
-                Entry::Pair(pair) => self.open(pair, counts),
+                Entry::Pair(pair) => self.open(pair),
                 Entry::Bank(pair, place) => {
                     self.push_bank(pair, place + 1);
                     self.try_section(pair, place, counts);
@@ -217,7 +216,7 @@ impl<'s, 'c> Walk<'s, 'c> {
     }
 
     /// Opens a pair: drops it when no bank can do, else lists its banks by their least key.
-    fn open(&mut self, place: usize, counts: &mut Counts) {
+    fn open(&mut self, place: usize) {
         let pair = &self.pairs[place];
         let source = &self.sources[pair.source];
         let rectifier = self.shelf.rectifiers[pair.rectifier];
@@ -269,37 +268,32 @@ impl<'s, 'c> Walk<'s, 'c> {
         if !carries(source.transformer, &source.hookup, source.path, Ok(rms_a), load_a) {
             return;
         }
-        let mut banks = Vec::new();
-        for (b, price) in banks_that_do {
-            let bank = self.shelf.banks[b];
-            let heat_w = match self.objective {
-                Objective::Cost => source.core_w,
-                Objective::Heat => {
-                    // Exact for the device with the least load; the others heat more, as loss and current rise with it.
-                    match self.least_heat_w(&self.raw(pair, bank), source, load_a, counts) {
-                        Some(w) => w,
-                        None => continue,
-                    }
-                }
-            };
-            banks.push((b, self.objective.order(base + price, heat_floor(heat_w))));
-        }
+        let rail = &self.site.supply.rails[self.shelf.rail];
+        let heat = match self.objective {
+            Objective::Cost => None,
+            Objective::Heat => Some(HeatBound::new(&high, esr_ohm, rail.voltage_v.abs() * rail.current_a)),
+        };
+        let mut banks: Vec<(usize, (i64, i64))> = (banks_that_do.into_iter())
+            .map(|(b, price)| {
+                let bank = self.shelf.banks[b];
+                let bank_f = self.site.can_f(bank.can, Corner::High) * f64::from(bank.cans);
+                let heat_w = source.core_w + heat.as_ref().map_or(0.0, |bound| bound.least_w(bank_f));
+                (b, self.objective.order(base + price, heat_floor(heat_w)))
+            })
+            .collect();
         banks.sort_by_key(|&(b, key)| (key, b));
         self.pairs[place].banks = banks;
         self.push_bank(place, 0);
     }
 
-    /// Heat with the least load that a device here draws, all of the supply's: what the source gives less what the rail
-    /// takes. It rises with ground current: more load, less mean voltage, but every ampere is drawn at the crest.
-    fn least_heat_w(&self, raw: &Raw, source: &Source, load_a: f64, counts: &mut Counts) -> Option<f64> {
-        counts.solves += 1;
-        let own = [WindingLoad {
-            volts_v: raw.hookup.volts_v,
-            load_a,
-        }];
-        let high = raw.wave(self.site, Corner::High, Ok(load_a), Ok(&own)).ok()?;
+    /// Heat of a section with the least load that a device here draws: what the source gives less what the rail takes.
+    /// It rises with ground current: more load raises the source current at every instant, and every ampere is drawn at
+    /// a positive source voltage.
+    fn least_heat_w(&self, raw: &Raw, source: &Source, solved: &mut Solved, counts: &mut Counts) -> Option<f64> {
+        let load_a = solved.load_a;
+        let high = solved.wave(self.site, raw, Corner::High, counts).ok()?;
         let rail = &self.site.supply.rails[self.shelf.rail];
-        let section = SectionHeat::new(self.site, raw, Ok(load_a), Ok(&high)).ok()?;
+        let section = SectionHeat::new(self.site, raw, Ok(load_a), Ok(high)).ok()?;
         let pass_w = high.mean_v() * load_a - rail.voltage_v.abs() * rail.current_a;
         Some(source.core_w + section.sum_w() + pass_w)
     }
@@ -332,10 +326,12 @@ impl<'s, 'c> Walk<'s, 'c> {
         let can = self.shelf.banks[bank];
         let cost = self.section_cost(source, self.shelf.rectifiers[pair_ref.rectifier])
             + self.prices.cost(&can.can.part, u64::from(can.cans)).0;
-        // Heat with the least load, which every device exceeds or meets.
         let heat = match self.objective {
             Objective::Cost => bank_key.1,
-            Objective::Heat => bank_key.0,
+            Objective::Heat => match self.least_heat_w(&raw, source, &mut solved, counts) {
+                Some(heat_w) => heat_floor(heat_w),
+                None => return,
+            },
         };
         self.sections.push(Section {
             pair,
