@@ -1,5 +1,5 @@
 //! The optimizer against brute force on small random cases: every combination of parts, judged by the audit and sorted
-//! by the key of DESIGN 7, must give the same builds in the same order, whatever bounds and orders the search uses.
+//! by the key (objective, other, text), must give the same builds in the same order, whatever bounds and orders the search uses.
 //!
 //! A failure prints the whole case. ORACLE_SEEDS=a..b in the environment runs other seeds.
 #![allow(clippy::unwrap_used, clippy::print_stdout, unreachable_pub)]
@@ -182,7 +182,7 @@ fn count(tally: &Tally, objective: Objective, supply: &Supply, catalogue: &Catal
     when("the optimum has a floating section", rails.any(floats));
 }
 
-/// The hook-ups that the search walks are those that DESIGN gives, each once; and a printed case reads back.
+/// The hook-ups that the search walks are those that the rules give, each once; and a printed case reads back.
 #[test]
 fn hookups_are_those_of_the_design() {
     over([40, 40, 0], |case| {

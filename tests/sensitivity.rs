@@ -490,7 +490,7 @@ const GROUPS: [(&str, &[&str]); 3] = [
     ("valley", &["main.headroom", "main.ride-through"]),
 ];
 
-/// Base, "PART.column" or "table.key", its new text, every change. What a row expects follows from DESIGN 2 to 5.
+/// Base, "PART.column" or "table.key", its new text, every change. What a row expects follows from the formulas, not from a run.
 const ROWS: &str = r#"
 # transformers.csv
 fixed T1.primary_v = 220 -> +valley -currents -idle -A.rectifier-junction -A.rectifier-surge -T1.primary-voltage

@@ -1,6 +1,6 @@
 //! Owns the parts as the rest of the program sees them: SI units, settled defaults.
 //!
-//! A field is an `Option` only where DESIGN gives the column no default: a limit that needs it then fails by name,
+//! A field is an `Option` only where the column has no default: a limit that needs it then fails by name,
 //! with the column as the reason. Readers build these types; nothing else does.
 
 use crate::units::Money;

@@ -128,7 +128,7 @@ fn sections(r: &mut Reader<'_>, tables: &[Table<'_>], rails: &[Rail], share_neve
     }
 }
 
-/// What DESIGN has and this version's search does not: told, never ignored. Each goes when the search can do it.
+/// What the file format has and this version's search does not: told, never ignored. Each goes when the search can do it.
 fn not_yet_offered(r: &mut Reader<'_>, tables: &[Table<'_>], rails: &[Rail]) {
     const NOT_YET: &str = "is not yet offered by this version";
     for (first, k) in sharing(rails) {

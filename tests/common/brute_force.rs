@@ -1,7 +1,7 @@
 //! The other way to the optimum: every combination, judged by the audit, sorted by the key.
 //!
 //! Shares with the program only the audit and the rules of assembly; hook-ups, pieces, prices, keys and order are
-//! written here once more from DESIGN. Each rail has its own section and transformer (share = "never").
+//! written here once more from the rules. Each rail has its own section and transformer (share = "never").
 #![allow(dead_code)]
 
 use std::cmp::Ordering;

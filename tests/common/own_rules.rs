@@ -1,4 +1,4 @@
-//! Rules of assembly, prices and the text of the key, written once more from DESIGN for the brute force.
+//! Rules of assembly, prices and the text of the key, written once more for the brute force.
 #![allow(dead_code)]
 
 use std::collections::BTreeMap;

