@@ -57,6 +57,15 @@ fn exit_codes() {
     check(&["pick", SUPPLY, "--by", "heat"], 0, "proved coolest: ", "");
     check(&["rank", SUPPLY, "--top", "3"], 0, "proved cheapest: ", "");
     check(&["vet", "catalog"], 0, "0 faults", "");
+    // No build without its cautions, in whatever form.
+    check(
+        &["pick", SUPPLY, "--format", "csv"],
+        0,
+        "qty_for_run",
+        "Mains voltage kills",
+    );
+    check(&["pick", SUPPLY, "--format", "json"], 0, "Mains voltage kills", "");
+    check(&["pick", SUPPLY], 0, "Mains voltage kills", "");
     check(&["schema"], 0, "binrail.build/1", "");
     check(&["--help"], 0, "Examples:", "");
     check(&["--version"], 0, "binrail ", "");

@@ -49,6 +49,9 @@ impl Audit {
             Format::Json => json::text(&json::audit(&report)),
             Format::Csv => csv::margins(&report),
         };
+        if common.format == Format::Csv {
+            talk.extend(report.cautions.clone());
+        }
         Ok(Answer::new(text, u8::from(!report.audit.passes())).with_talk(talk))
     }
 }

@@ -130,7 +130,15 @@ impl Asked {
                 (Format::Csv, true) => csv::rank(&reports),
             };
             let save = save.map(|path| (path.clone(), json::text(&json::build(first))));
-            Answer::new(text, if proved { 0 } else { 3 }).with_save(save)
+            // A CSV file has no room for cautions, but no build goes without them.
+            let cautions = if common.format == Format::Csv {
+                first.cautions.clone()
+            } else {
+                Vec::new()
+            };
+            Answer::new(text, if proved { 0 } else { 3 })
+                .with_save(save)
+                .with_talk(cautions)
         };
         Ok(answer.with_talk(input::warnings(&loaded)).with_work(work))
     }
