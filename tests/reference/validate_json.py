@@ -29,7 +29,7 @@ def main():
         saved = str(pathlib.Path(folder) / "build.json")
         hard = pathlib.Path(folder) / "hard.toml"
         easy = pathlib.Path("examples/tide-gauge/supply.toml").read_text(encoding="utf-8")
-        hard.write_text(easy.replace('voltage = "5 V"', 'voltage = "5.5 V"'), encoding="utf-8")
+        hard.write_text(easy.replace('high = "45 degC"', 'high = "75 degC"'), encoding="utf-8")
         broken = pathlib.Path(folder) / "broken.toml"
         broken.write_text(easy.replace("[mains]", "[manes]"), encoding="utf-8")
         calls = [
