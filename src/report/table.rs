@@ -36,12 +36,7 @@ pub fn build(report: &Report, page: Page) -> String {
     out.push_str(&wiring(report));
     out.push_str(&format!("\nBill of materials, run of {}\n", report.supply.builds));
     out.push_str(&bill(report, page));
-    out.push_str("\nMargins, tightest first\n");
-    out.push_str(&margins(report, page));
-    out.push_str("\nHeat at the high corner, full load\n");
-    out.push_str(&heat(report, page));
-    out.push_str(&cautions(&report.cautions, page));
-    out
+    out + &evidence(report, page)
 }
 
 /// An audited build: whether it passes, every margin, heat, cautions.
@@ -54,12 +49,20 @@ pub fn audit(report: &Report, page: Page) -> String {
         _ => format!("fails: {failing} of {all} limits are not met"),
     };
     let mut out = strong(&words, failing == 0, page);
-    out.push_str("\n\nMargins, tightest first\n");
-    out.push_str(&margins(report, page));
-    out.push_str("\nHeat at the high corner, full load\n");
-    out.push_str(&heat(report, page));
-    out.push_str(&cautions(&report.cautions, page));
-    out
+    out.push('\n');
+    out + &evidence(report, page)
+}
+
+/// What backs a build: margins, heat, cautions.
+fn evidence(report: &Report, page: Page) -> String {
+    let parts = [
+        "\nMargins, tightest first\n".to_owned(),
+        margins(report, page),
+        "\nHeat at the high corner, full load\n".to_owned(),
+        heat(report, page),
+        cautions(&report.cautions, page),
+    ];
+    parts.concat()
 }
 
 /// A ranking: one row for each build.
