@@ -137,6 +137,12 @@ impl Check {
         }
     }
 
+    /// The one limit of a section that collapses at that corner.
+    #[must_use]
+    pub fn collapse(corner: impl Into<Option<Corner>>) -> Check {
+        Check::new(Limit::Collapse, corner, Ok(0.0), Ok(1.0))
+    }
+
     /// The column whose blank cell keeps this limit from being evaluated.
     #[must_use]
     pub fn missing(&self) -> Option<&'static str> {

@@ -108,17 +108,12 @@ pub fn audit(supply: &Supply, build: &Build) -> Audit {
     let mut margins: Vec<Margin> = Vec::new();
     let mut heat: Vec<HeatItem> = Vec::new();
     let mut heat_sum: Known<Vec<f64>> = Ok(Vec::new());
-    let mut collapsed = false;
-    let mut waves_of: Vec<Option<Waves>> = Vec::new();
+    let mut waves_of: Vec<Result<Waves, Corner>> = Vec::new();
     for section in &build.sections {
         let raw = raw_of(build, section);
         let all = loads_on(section.transformer);
         let all = all.as_ref().map(Vec::as_slice).map_err(|&column| column);
-        waves_of.push(
-            waves(&site, &raw, load_of(section), all)
-                .map_err(|_| collapsed = true)
-                .ok(),
-        );
+        waves_of.push(waves(&site, &raw, load_of(section), all));
     }
 
     for (place, instance) in build.transformers.iter().enumerate() {
@@ -139,7 +134,7 @@ pub fn audit(supply: &Supply, build: &Build) -> Audit {
             .filter(|(s, _)| s.transformer == place)
         {
             let raw = raw_of(build, section);
-            va = va.zip(*waves).map(|(sum, waves)| {
+            va = va.zip(waves.ok()).map(|(sum, waves)| {
                 let rms_a = waves.high?.source_rms_a();
                 Ok(sum? + transformer::section_va(raw.hookup, raw.path, rms_a))
             });
@@ -169,14 +164,12 @@ pub fn audit(supply: &Supply, build: &Build) -> Audit {
             })
         };
         let load_a = load_of(section);
-        let Some(waves) = waves else {
-            to(Check::new(
-                Limit::Collapse,
-                collapse_corner(&site, &raw, load_a, loads_on(section.transformer)),
-                Ok(0.0),
-                Ok(1.0),
-            ));
-            continue;
+        let waves = match waves {
+            Ok(waves) => waves,
+            Err(corner) => {
+                to(Check::collapse(*corner));
+                continue;
+            }
         };
         let high = by_ref(&waves.high);
         let idle_v = site.idle_v(raw.transformer, raw.hookup);
@@ -227,7 +220,7 @@ pub fn audit(supply: &Supply, build: &Build) -> Audit {
 
     for (place, (stage, choice)) in stages.iter().zip(&build.rails).enumerate() {
         let section = &build.sections[choice.section];
-        let Some(waves) = &waves_of[choice.section] else {
+        let Ok(waves) = &waves_of[choice.section] else {
             continue;
         };
         let raw = raw_of(build, section);
@@ -280,7 +273,7 @@ pub fn audit(supply: &Supply, build: &Build) -> Audit {
     }
 
     let cost = build.cost(supply);
-    let heat_w = if collapsed {
+    let heat_w = if waves_of.iter().any(Result::is_err) {
         None
     } else {
         Some(heat_sum.map(|sum| total_w(sum.into_iter())))
@@ -342,11 +335,6 @@ fn waves(site: &Site, raw: &Raw, load_a: Known<f64>, all: Known<&[WindingLoad]>)
         high: at(high)?,
         worn: at(worn)?,
     })
-}
-
-fn collapse_corner(site: &Site, raw: &Raw, load_a: Known<f64>, all: Known<Vec<WindingLoad>>) -> Option<Corner> {
-    let all = all.as_ref().map(Vec::as_slice).map_err(|&column| column);
-    waves(site, raw, load_a, all).err()
 }
 
 /// The waveform alone carries less than full load, so it cannot collapse where high did not.

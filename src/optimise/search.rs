@@ -56,6 +56,7 @@ pub(super) fn search<'c>(
     }
     let base: i64 = least.iter().sum();
     let parts = question.catalogue.parts().count();
+    offer_first(question, &rails, best, counts, parts);
     let mut passed = base - 1;
     // Heats are floored rail by rail and rounded in the sum: the first reach covers the difference.
     let mut reach = base + i64::try_from(rails.len()).unwrap_or(0);
@@ -184,6 +185,28 @@ fn ask_solver<'c>(
         }
         Answer::Infeasible => Said::NothingWithinReach,
         Answer::Undecided(_) => Said::Nothing,
+    }
+}
+
+/// Offers the combination of every rail's first column: a build to start with, mostly within a few per cent of the
+/// best, beyond which no column need be looked for.
+fn offer_first<'c>(
+    question: &Question<'c>,
+    rails: &[RailColumns<'_, 'c>],
+    best: &mut Best<'c>,
+    counts: &mut Counts,
+    parts: usize,
+) {
+    let ready: Vec<&[Ready]> = rails.iter().map(|rail| rail.ready.as_slice()).collect();
+    let most = dearest(question, &ready);
+    let first = ready
+        .iter()
+        .map(|ready| vec![(0, ready[0].column.floor_cost.0)])
+        .collect();
+    let pool = Pool::new(question, &ready, first, most);
+    if pool.by_rail.iter().all(|kept| !kept.is_empty()) {
+        let choice = vec![0; rails.len()];
+        Combine::new(question, &ready, &pool, best, counts, parts, most).offer_choice(&choice);
     }
 }
 

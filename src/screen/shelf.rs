@@ -86,7 +86,7 @@ impl<'c> Shelf<'c> {
                 .filter(|&n| n > 0)
                 .min()
         };
-        // A can that does not last without any ripple lasts with none.
+        // A can that does not last without ripple does not last with any.
         let lasts = |can: &Reservoir| {
             rail.paths
                 .iter()

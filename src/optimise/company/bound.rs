@@ -67,11 +67,6 @@ impl Bound {
     }
 }
 
-/// What a collapsed section leaves to judge.
-pub(super) fn collapse() -> Check {
-    Check::new(Limit::Collapse, None, Ok(0.0), Ok(1.0))
-}
-
 /// Least and most of something over all parts that state it.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub(super) struct Span {

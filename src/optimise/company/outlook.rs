@@ -16,7 +16,7 @@
 use std::collections::BTreeMap;
 
 use super::aisle::Aisle;
-use super::bound::{Bound, End, Losses, SLACK, Span, collapse};
+use super::bound::{Bound, End, Losses, SLACK, Span};
 use crate::audit::{Check, Corner, Limit, Raw, SectionHeat, rectifier, reservoir, transformer, whole};
 use crate::build::{diodes_in_path, pieces_of_rectifier};
 use crate::catalogue::{Forward, Rectifier};
@@ -119,7 +119,7 @@ impl<'a, 's> Outlooks<'a, 's> {
     /// Solves the ends; `raw` has no threshold and slope of its own, and `stands`: none is known to collapse.
     fn enclosure(&self, raw: &Raw, forwards: Option<&Forwards>, stands: bool) -> Enclosure {
         let mut enclosure = Enclosure {
-            collapse: collapse().tightness(),
+            collapse: Check::collapse(None).tightness(),
             collapses: false,
             ends: None,
         };
@@ -173,7 +173,7 @@ impl<'a, 's> Outlooks<'a, 's> {
     /// What the least rms currents leave of transformer and bank.
     fn carried(&self, raw: &Raw, enclosure: &Enclosure) -> Bound {
         if enclosure.collapses {
-            return Bound::NONE.held(collapse());
+            return Bound::NONE.held(Check::collapse(None));
         }
         let Some(calm) = enclosure.calm() else {
             return Bound::NONE;

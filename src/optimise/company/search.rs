@@ -10,12 +10,12 @@ use std::collections::BinaryHeap;
 use std::rc::Rc;
 
 use super::aisle::Aisle;
-use super::bound::{Bound, Losses, collapse};
+use super::bound::{Bound, Losses};
 use super::cooling::Cooling;
 use super::ledger::Ledger;
 use super::outlook::{Enclosure, Fed, Outlooks};
 use super::worth::{Floors, Spot};
-use crate::audit::whole;
+use crate::audit::{Check, whole};
 use crate::catalogue::PartId;
 use crate::screen::Stop;
 use crate::units::Money;
@@ -99,7 +99,7 @@ impl<'a, 's> Search<'a, 's> {
             heap: BinaryHeap::new(),
         };
         for (place, source) in aisle.sources.iter().enumerate() {
-            search.push(source.bound, collapse().tightness(), Entry::Source(place));
+            search.push(source.bound, Check::collapse(None).tightness(), Entry::Source(place));
         }
         search
     }
@@ -153,7 +153,7 @@ impl<'a, 's> Search<'a, 's> {
             let need = need.min(self.ledger.need(part.can.part.id));
             let cost = whole::cost(aisle.site.supply, base + part.price);
             let bound = aisle.fed_by(place, bank).any(cost);
-            if bound.least(collapse().tightness()) <= need {
+            if bound.least(Check::collapse(None).tightness()) <= need {
                 continue;
             }
             let fed = self.outlooks.fed(place, bank, bound);

@@ -1,6 +1,6 @@
 //! Owns the exact verdict on one section with each of its devices and sinks, by the audit's functions.
 
-use super::bound::{Bound, Losses, SLACK, collapse};
+use super::bound::{Bound, Losses, SLACK};
 use super::ledger::Company;
 use super::outlook::Fed;
 use super::search::Search;
@@ -52,7 +52,7 @@ impl Search<'_, '_> {
             }
             let (mut bound, losses) = self.outlooks.behind(fed, &spot.outlook, place);
             if collapsed && device.known {
-                bound = bound.held(collapse());
+                bound = bound.held(Check::collapse(None));
             } else if let Some(lighter) = solved.as_ref().filter(|_| device.known) {
                 let headroom = stage.headroom(aisle.site, by_ref(&lighter.low)).tightness() + SLACK;
                 let section = lighter
@@ -75,7 +75,7 @@ impl Search<'_, '_> {
                     Err(Collapses) => collapsed = true,
                 }
             }
-            let company = self.without_sinks(&spot, place).and(&collapse());
+            let company = self.without_sinks(&spot, place).and(&Check::collapse(None));
             self.settle(&spot, place, company, None);
         }
     }
