@@ -8,9 +8,9 @@ use std::path::Path;
 use std::time::{Duration, Instant};
 
 use binrail::catalogue::load;
-use binrail::optimise::{NODE_BUDGET, Question, optimise};
+use binrail::optimise::{Question, optimise};
 use binrail::physics::raw_section::{RawSection, steady_state};
-use binrail::screen::{Objective, Stop};
+use binrail::screen::Objective;
 use binrail::supply::read;
 
 /// Median over runs; enough runs to fill about a second, at least three.
@@ -72,14 +72,8 @@ fn main() -> Result<(), String> {
         let supply = read(Path::new(&path)).map_err(|faults| format!("{path}: {faults:?}"))?;
         for (objective, top) in [(Objective::Cost, 1), (Objective::Heat, 1), (Objective::Cost, 20)] {
             let question = Question {
-                supply: &supply,
-                catalogue: &loaded.catalogue,
-                objective,
                 top,
-                without: Default::default(),
-                with: Vec::new(),
-                stop: Stop::default(),
-                node_budget: NODE_BUDGET,
+                ..Question::new(&supply, &loaded.catalogue, objective)
             };
             let time = median(quick, || {
                 black_box(optimise(&question).is_ok());

@@ -56,14 +56,10 @@ fn supply(rails: &[&str], caps: Value) -> Supply {
 fn ask<'c>(supply: &'c Supply, catalogue: &'c Catalogue, top: usize, node_budget: u64, stop: Stop) -> Outcome<'c> {
     let objective = Objective::Cost;
     let question = Question {
-        supply,
-        catalogue,
-        objective,
         top,
-        without: Default::default(),
-        with: vec![],
         stop,
         node_budget,
+        ..Question::new(supply, catalogue, objective)
     };
     optimise(&question).unwrap()
 }

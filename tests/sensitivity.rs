@@ -24,10 +24,10 @@ use std::process::Command;
 
 use binrail::audit::audit;
 use binrail::catalogue::{Catalogue, Form as CellForm, Missing, SavedPart, Slot, columns, from_cells};
-use binrail::optimise::{NODE_BUDGET, Outcome, Proof, Question, optimise};
+use binrail::optimise::{Outcome, Proof, Question, optimise};
 use binrail::report::{Report, csv, json as documents};
 use binrail::saved;
-use binrail::screen::{Objective, Stop};
+use binrail::screen::Objective;
 use binrail::supply::{Form, Supply, from_json, keys};
 use serde_json::{Value, json};
 
@@ -351,14 +351,7 @@ impl Case {
 
 fn pick<'c>(supply: &'c Supply, catalogue: &'c Catalogue) -> Outcome<'c> {
     let outcome = optimise(&Question {
-        supply,
-        catalogue,
-        objective: Objective::Cost,
-        top: 1,
-        without: BTreeSet::new(),
-        with: Vec::new(),
-        node_budget: NODE_BUDGET,
-        stop: Stop::default(),
+        ..Question::new(supply, catalogue, Objective::Cost)
     })
     .unwrap();
     assert_eq!(outcome.proof, Proof::Proved);

@@ -5,7 +5,7 @@ use std::path::Path;
 
 use binrail::catalogue::load;
 use binrail::optimise::{NODE_BUDGET, Proof, Question, optimise};
-use binrail::screen::{Objective, Stop};
+use binrail::screen::Objective;
 use binrail::supply::read;
 
 #[test]
@@ -16,14 +16,8 @@ fn out_of_nodes_gives_the_same_answer() {
         let supply = read(Path::new(&format!("examples/{name}/supply.toml"))).unwrap();
         let answer = |node_budget: u64| {
             let question = Question {
-                supply: &supply,
-                catalogue: &loaded.catalogue,
-                objective: Objective::Cost,
-                top: 1,
-                without: Default::default(),
-                with: Vec::new(),
-                stop: Stop::default(),
                 node_budget,
+                ..Question::new(&supply, &loaded.catalogue, Objective::Cost)
             };
             optimise(&question).unwrap()
         };

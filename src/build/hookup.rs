@@ -14,15 +14,18 @@ pub enum HookupKind {
     Parallel,
     /// Two halves of a full-wave path.
     CentreTap,
+    /// Two halves of a positive and a negative section.
+    Dual,
 }
 
 impl HookupKind {
     /// All kinds.
-    pub const ALL: [HookupKind; 4] = [
+    pub const ALL: [HookupKind; 5] = [
         HookupKind::Single,
         HookupKind::Series,
         HookupKind::Parallel,
         HookupKind::CentreTap,
+        HookupKind::Dual,
     ];
 
     /// The word for it in files and reports.
@@ -33,6 +36,7 @@ impl HookupKind {
             HookupKind::Series => "series",
             HookupKind::Parallel => "parallel",
             HookupKind::CentreTap => "centre-tap",
+            HookupKind::Dual => "dual",
         }
     }
 
@@ -41,8 +45,10 @@ impl HookupKind {
     pub fn takes(self, path: Path) -> bool {
         match path {
             Path::CentreTap => self == HookupKind::CentreTap,
-            Path::HalfWave | Path::Bridge => self != HookupKind::CentreTap,
-            Path::Dual => false,
+            Path::HalfWave | Path::Bridge => {
+                matches!(self, HookupKind::Single | HookupKind::Series | HookupKind::Parallel)
+            }
+            Path::Dual => self == HookupKind::Dual,
         }
     }
 }
@@ -52,11 +58,12 @@ impl HookupKind {
 pub struct Hookup {
     /// How they are joined.
     pub kind: HookupKind,
-    /// Their places in secondary_v, counted from 1.
+    /// Their places in secondary_v, counted from 1; empty on the negative half of a dual pair, whose positive one holds
+    /// them.
     pub secondaries: Vec<usize>,
-    /// Rated voltage of the whole, of one half for centre-tap.
+    /// Rated voltage of the whole, of one half for centre-tap and dual.
     pub volts_v: f64,
-    /// Rated current of the whole, of one half for centre-tap.
+    /// Rated current of the whole, of one half for centre-tap and dual.
     pub amps_a: f64,
 }
 

@@ -2,11 +2,13 @@
 //!
 //! Invariant: says nothing about whether a build holds; that is the audit's alone.
 
+mod distance;
 mod hookup;
 mod rules;
 
 use std::collections::BTreeMap;
 
+pub use distance::{Change, Place, changes, distance, places};
 pub use hookup::{Hookup, HookupKind, hookups};
 pub use rules::{Misfit, device_serves, diodes_in_path, misfits, pieces_of_rectifier, sink_takes};
 
@@ -34,6 +36,9 @@ pub struct Section<'c> {
     pub hookup: Hookup,
     /// Rectifier circuit.
     pub path: Path,
+    /// Place in [`Build::sections`] of the other polarity of a dual pair. Secondaries, the rectifier's pieces and its
+    /// sink stand on the positive one; the negative one names the same rectifier.
+    pub pair: Option<usize>,
     /// Module or diode.
     pub rectifier: &'c Rectifier,
     /// Its sink, or free-standing.
@@ -87,13 +92,25 @@ impl Line<'_> {
     }
 }
 
+impl Section<'_> {
+    /// Pieces of its rectifier; 0 on the negative half of a dual pair.
+    #[must_use]
+    pub fn rectifier_pieces(&self) -> u64 {
+        if self.hookup.secondaries.is_empty() {
+            0
+        } else {
+            pieces_of_rectifier(self.rectifier.kind, self.path)
+        }
+    }
+}
+
 impl<'c> Build<'c> {
     /// Every use of a part with its pieces; a part may come several times.
     pub fn uses(&self) -> impl Iterator<Item = (&'c Part, u64)> {
         let transformers = self.transformers.iter().map(|t| (&t.part.part, 1));
         let sections = self.sections.iter().flat_map(|s| {
             [
-                Some((&s.rectifier.part, pieces_of_rectifier(s.rectifier.kind, s.path))),
+                Some((&s.rectifier.part, s.rectifier_pieces())).filter(|&(_, pieces)| pieces > 0),
                 s.rectifier_sink.map(|sink| (&sink.part, 1)),
                 Some((&s.reservoir.part, u64::from(s.cans))),
             ]

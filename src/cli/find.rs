@@ -11,7 +11,7 @@ use super::output::{Answer, page};
 use super::{Common, Failure, Format, call_fault, input};
 use crate::build::device_serves;
 use crate::catalogue::{Catalogue, Loaded};
-use crate::optimise::{NODE_BUDGET, Outcome, Proof, Question, Reasons, optimise, rejections};
+use crate::optimise::{Outcome, Proof, Question, Reasons, optimise, rejections};
 use crate::report::none::NoBuild;
 use crate::report::{ProofLine, Report, csv, json, table};
 use crate::screen::{Counts, Objective, Stop};
@@ -165,14 +165,11 @@ impl Asked {
             By::Heat => Objective::Heat,
         };
         Ok(Question {
-            supply,
-            catalogue,
-            objective,
             top,
             without,
             with,
             stop,
-            node_budget: NODE_BUDGET,
+            ..Question::new(supply, catalogue, objective)
         })
     }
 }

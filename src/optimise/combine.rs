@@ -247,6 +247,7 @@ fn build_of<'c>(columns: &[&Column<'c>]) -> Build<'c> {
         transformer: rail,
         hookup: (*column.hookup).clone(),
         path: column.path,
+        pair: None,
         rectifier: column.rectifier,
         rectifier_sink: column.rectifier_sink,
         reservoir: column.reservoir,

@@ -41,10 +41,45 @@ pub struct Question<'c> {
     pub without: BTreeSet<PartId>,
     /// Parts of which the build must hold at least one piece, anywhere or (`Some`) in that rail.
     pub with: Vec<(PartId, Option<usize>)>,
+    /// Nothing with an objective above this is of interest (millionths of the currency, or microwatts).
+    pub most: Option<i64>,
+    /// Builds no farther than so many changes from a given one.
+    pub near: Option<Near>,
+    /// Every limit of a build must have at least this tightness, besides being met.
+    pub tightness: f64,
     /// When to give up.
     pub stop: Stop,
     /// Nodes of one round of the search after which the integer program is asked; [`NODE_BUDGET`].
     pub node_budget: u64,
+}
+
+/// A build to stay close to.
+#[derive(Debug, Clone)]
+pub struct Near {
+    /// What stands in its places, rail by rail ([`crate::build::places`]).
+    pub places: Vec<[String; 7]>,
+    /// Most places that may differ.
+    pub most: usize,
+}
+
+impl<'c> Question<'c> {
+    /// The best build, nothing ruled out or demanded.
+    #[must_use]
+    pub fn new(supply: &'c Supply, catalogue: &'c Catalogue, objective: Objective) -> Question<'c> {
+        Question {
+            supply,
+            catalogue,
+            objective,
+            top: 1,
+            without: BTreeSet::new(),
+            with: Vec::new(),
+            most: None,
+            near: None,
+            tightness: f64::NEG_INFINITY,
+            stop: Stop::default(),
+            node_budget: NODE_BUDGET,
+        }
+    }
 }
 
 /// A few seconds of search: what is not settled by then is better proved by an integer program.

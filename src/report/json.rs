@@ -4,7 +4,6 @@ use serde_json::{Map, Value, json};
 
 use super::Report;
 use crate::audit::{Limit, Margin};
-use crate::build::pieces_of_rectifier;
 use crate::catalogue::{Part, Sink};
 use crate::fault::Fault;
 use crate::physics::raw_section::Waveform;
@@ -33,9 +32,9 @@ pub fn build(report: &Report) -> Value {
                 "secondaries": s.hookup.secondaries,
                 "hookup": s.hookup.kind.word(),
                 "path": s.path.word(),
-                "pair": null,
+                "pair": s.pair.map(|other| build.sections[other].id.clone()),
                 "rectifier": s.rectifier.part.name,
-                "rectifier_qty": pieces_of_rectifier(s.rectifier.kind, s.path),
+                "rectifier_qty": s.rectifier_pieces(),
                 "rectifier_sink": sink(s.rectifier_sink),
                 "reservoir": s.reservoir.part.name,
                 "reservoir_qty": s.cans,

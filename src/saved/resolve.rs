@@ -242,6 +242,7 @@ impl<'c> Resolver<'c, '_> {
             transformer: transformer?,
             hookup: hookup?,
             path: path?,
+            pair: None,
             rectifier: rectifier?,
             rectifier_sink: rectifier_sink.flatten(),
             reservoir: reservoir?,

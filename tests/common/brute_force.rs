@@ -225,6 +225,7 @@ fn behind<'c>(
                             transformer: 0,
                             hookup: hookup.clone(),
                             path,
+                            pair: None,
                             rectifier,
                             rectifier_sink,
                             reservoir,

@@ -1,13 +1,13 @@
 //! Runs small cases on two threads and holds the optimizer's answers against lists of the brute force.
 #![allow(dead_code)]
 
-use std::collections::{BTreeMap, BTreeSet};
+use std::collections::BTreeMap;
 use std::sync::Mutex;
 use std::sync::atomic::{AtomicUsize, Ordering};
 
 use binrail::catalogue::Catalogue;
-use binrail::optimise::{Found, NODE_BUDGET, Outcome, Proof, Question, optimise};
-use binrail::screen::{Objective, Stop};
+use binrail::optimise::{Found, Outcome, Proof, Question, optimise};
+use binrail::screen::Objective;
 use binrail::supply::Supply;
 
 use crate::brute_force::Judged;
@@ -54,14 +54,8 @@ impl Tally {
 
 pub fn question<'c>(supply: &'c Supply, catalogue: &'c Catalogue, objective: Objective, top: usize) -> Question<'c> {
     Question {
-        supply,
-        catalogue,
-        objective,
         top,
-        without: BTreeSet::new(),
-        with: Vec::new(),
-        stop: Stop::default(),
-        node_budget: NODE_BUDGET,
+        ..Question::new(supply, catalogue, objective)
     }
 }
 

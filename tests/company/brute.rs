@@ -58,6 +58,7 @@ impl Case {
                                                     transformer: 0,
                                                     hookup: hookup.clone(),
                                                     path,
+                                                    pair: None,
                                                     rectifier,
                                                     rectifier_sink,
                                                     reservoir,

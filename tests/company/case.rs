@@ -3,8 +3,8 @@
 use std::collections::BTreeSet;
 
 use binrail::catalogue::*;
-use binrail::optimise::{NODE_BUDGET, Question};
-use binrail::screen::{Objective, Stop};
+use binrail::optimise::Question;
+use binrail::screen::Objective;
 use binrail::supply::{Ageing, Ambient, Caps, Mains, Margins, Path, Rail, Supply};
 use binrail::units::Money;
 
@@ -21,14 +21,9 @@ pub(crate) struct Case {
 impl Case {
     pub(crate) fn question(&self) -> Question<'_> {
         Question {
-            supply: &self.supply,
-            catalogue: &self.catalogue,
-            objective: Objective::Cost,
-            top: 1,
             without: self.without.clone(),
             with: self.with.clone(),
-            stop: Stop::default(),
-            node_budget: NODE_BUDGET,
+            ..Question::new(&self.supply, &self.catalogue, Objective::Cost)
         }
     }
 

@@ -109,6 +109,7 @@ fn random_build<'c>(r: &mut Random, supply: &Supply, c: &'c Catalogue) -> Build<
                 transformer: 0,
                 hookup,
                 path,
+                pair: None,
                 rectifier,
                 rectifier_sink,
                 reservoir,
