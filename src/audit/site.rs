@@ -2,7 +2,7 @@
 
 use std::f64::consts::SQRT_2;
 
-use super::check::{Corner, Known};
+use super::check::{Check, Corner, Known};
 use crate::build::{Hookup, diodes_in_path};
 use crate::catalogue::{Forward, Junction, Rectifier, Reservoir, Transformer};
 use crate::physics::constants::{
@@ -27,6 +27,8 @@ pub struct Site<'s> {
     aged_c: f64,
     /// Factor on series resistance at the end of life and in the cold.
     aged_esr: f64,
+    /// Tightness that every limit must have beside being met; minus infinity: none is asked.
+    tightness: f64,
 }
 
 impl<'s> Site<'s> {
@@ -40,7 +42,22 @@ impl<'s> Site<'s> {
             t_hi_c: supply.ambient.high_c + supply.ambient.inside_rise_k,
             aged_c: (1.0 - supply.ageing.capacitance_loss) * reservoir::cold_capacitance(t_lo_c),
             aged_esr: supply.ageing.esr_rise * reservoir::cold_esr(t_lo_c),
+            tightness: f64::NEG_INFINITY,
         }
+    }
+
+    /// The same for a search that asks for more than that limits are met.
+    #[must_use]
+    pub fn with_tightness(self, tightness: f64) -> Site<'s> {
+        Site { tightness, ..self }
+    }
+
+    /// Whether a limit holds: it is met, as tightly as is asked. What does not apply holds.
+    #[must_use]
+    pub fn holds(&self, check: impl Into<Option<Check>>) -> bool {
+        check
+            .into()
+            .is_none_or(|check| check.met() && check.tightness() >= self.tightness)
     }
 
     /// Rated primary voltage in the wiring nearest to the nominal mains, of two the higher.

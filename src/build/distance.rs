@@ -1,8 +1,8 @@
 //! Owns how far two builds of the same supply are apart: the (rail, place) pairs in which they differ.
 
-use super::{Build, Section};
+use super::{Build, Hookup};
 use crate::catalogue::Sink;
-use crate::supply::Supply;
+use crate::supply::{Path, Supply};
 
 /// One thing that is chosen for a rail.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord)]
@@ -73,7 +73,7 @@ pub fn places(supply: &Supply, build: &Build) -> Vec<[String; 7]> {
             let section = &build.sections[rail.section];
             [
                 build.transformers[section.transformer].part.part.name.clone(),
-                wiring(supply, section),
+                wiring(supply, &section.hookup, section.path, &section.rails),
                 pieces(section.rectifier_pieces(), &section.rectifier.part.name),
                 sink(section.rectifier_sink),
                 pieces(u64::from(section.cans), &section.reservoir.part.name),
@@ -84,14 +84,16 @@ pub fn places(supply: &Supply, build: &Build) -> Vec<[String; 7]> {
         .collect()
 }
 
-fn wiring(supply: &Supply, section: &Section) -> String {
-    let secondaries: Vec<String> = section.hookup.secondaries.iter().map(ToString::to_string).collect();
-    let rails: Vec<&str> = section.rails.iter().map(|&r| supply.rails[r].name.as_str()).collect();
+/// Secondaries, hook-up, path and rails of a section, written out.
+#[must_use]
+pub fn wiring(supply: &Supply, hookup: &Hookup, path: Path, rails: &[usize]) -> String {
+    let secondaries: Vec<String> = hookup.secondaries.iter().map(ToString::to_string).collect();
+    let rails: Vec<&str> = rails.iter().map(|&r| supply.rails[r].name.as_str()).collect();
     format!(
         "{} {} {} for {}",
         secondaries.join("+"),
-        section.hookup.kind.word(),
-        section.path.word(),
+        hookup.kind.word(),
+        path.word(),
         rails.join(", ")
     )
 }

@@ -133,6 +133,7 @@ pub fn hookups(transformer: &Transformer) -> Vec<Hookup> {
         }
         if group.len() >= 2 {
             found.push(Hookup::new(HookupKind::CentreTap, &group[..2], transformer));
+            found.push(Hookup::new(HookupKind::Dual, &group[..2], transformer));
         }
     }
     found
@@ -159,4 +160,43 @@ fn equal_groups(transformer: &Transformer) -> Vec<Vec<usize>> {
         }
     }
     groups
+}
+
+/// Equal windings of a transformer, whose places sections take one after the other.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct Windings {
+    /// Places in secondary_v, rising. An x-0-x winding has two, side by side.
+    pub places: Vec<usize>,
+    /// Whether they are x-0-x windings, each of which serves one section (or dual pair) only: its halves share a node.
+    pub tapped: bool,
+}
+
+impl Windings {
+    /// Places that a hook-up of so many secondaries uses up.
+    #[must_use]
+    pub fn used_up(&self, count: usize) -> usize {
+        if self.tapped { 2 } else { count }
+    }
+}
+
+/// The windings of a transformer by what is equal among them, in the order of their first places.
+#[must_use]
+pub fn windings(transformer: &Transformer) -> Vec<Windings> {
+    let mut found: Vec<Windings> = Vec::new();
+    for (index, secondary) in transformer.secondaries.iter().enumerate() {
+        let alike = found.iter_mut().find(|windings| {
+            let first = &transformer.secondaries[windings.places[0] - 1];
+            #[allow(clippy::float_cmp)] // equal as written
+            let equal = first.volts_v == secondary.volts_v && first.amps_a == secondary.amps_a;
+            equal && first.tapped.is_some() == secondary.tapped.is_some()
+        });
+        match alike {
+            Some(windings) => windings.places.push(index + 1),
+            None => found.push(Windings {
+                places: vec![index + 1],
+                tapped: secondary.tapped.is_some(),
+            }),
+        }
+    }
+    found
 }

@@ -5,11 +5,13 @@
 mod distance;
 mod hookup;
 mod rules;
+mod sharing;
 
 use std::collections::BTreeMap;
 
-pub use distance::{Change, Place, changes, distance, places};
-pub use hookup::{Hookup, HookupKind, hookups};
+pub use distance::{Change, Place, changes, distance, places, wiring};
+pub use hookup::{Hookup, HookupKind, Windings, hookups, windings};
+pub use sharing::{may_pair, may_share};
 pub use rules::{Misfit, device_serves, diodes_in_path, misfits, pieces_of_rectifier, sink_takes};
 
 use crate::catalogue::{Part, PartId, PassDevice, Rectifier, Reservoir, Sink, Transformer};

@@ -47,33 +47,44 @@ pub struct Found<'c> {
 /// A bill of materials: parts with their pieces per unit, by part.
 pub(super) type Bill = Vec<(PartId, u64)>;
 
-/// The N best so far.
+/// What a search collects, and what can still be of interest to it.
+pub(super) trait Wanted<'c> {
+    /// Nothing with a score above this is of interest.
+    fn limit(&self) -> f64;
+
+    /// Nothing whose cost and heat are at least these is of interest.
+    fn beyond(&self, cost: i64, heat: i64) -> bool;
+
+    /// Offers a feasible build.
+    fn offer(&mut self, bill: Bill, cost: i64, heat: i64, build: &mut dyn FnMut() -> Build<'c>);
+}
+
+/// The N best by an objective, of those with an objective of at most a ceiling.
 pub(super) struct Best<'c> {
     objective: Objective,
     most: usize,
+    ceiling: i64,
+    /// What the score charges for what the objective does not see, and the cap on that: no build has a higher score than
+    /// its objective and the charge for the whole cap.
+    charge: f64,
     by_bill: BTreeMap<Bill, Found<'c>>,
     /// First two parts of the N-th key once there are N.
     worst: Option<(i64, i64)>,
 }
 
-impl<'c> Best<'c> {
-    pub(super) fn new(objective: Objective, most: usize) -> Best<'c> {
-        Best {
-            objective,
-            most: most.max(1),
-            by_bill: BTreeMap::new(),
-            worst: None,
-        }
+impl<'c> Wanted<'c> for Best<'c> {
+    #[allow(clippy::cast_precision_loss)]
+    fn limit(&self) -> f64 {
+        self.worst.map_or(self.ceiling, |worst| worst.0.min(self.ceiling)) as f64 + self.charge
     }
 
-    /// Nothing whose (objective, other) lies above this can enter; `None` while there is room.
-    pub(super) fn worst(&self) -> Option<(i64, i64)> {
-        self.worst
+    fn beyond(&self, cost: i64, heat: i64) -> bool {
+        let least = self.objective.order(cost, heat);
+        least.0 > self.ceiling || self.worst.is_some_and(|worst| least > worst)
     }
 
-    /// Offers a feasible build.
-    pub(super) fn offer(&mut self, bill: Bill, cost: i64, heat: i64, build: impl FnOnce() -> Build<'c>) {
-        if self.worst.is_some_and(|worst| self.objective.order(cost, heat) > worst) {
+    fn offer(&mut self, bill: Bill, cost: i64, heat: i64, build: &mut dyn FnMut() -> Build<'c>) {
+        if self.beyond(cost, heat) {
             return;
         }
         let build = build();
@@ -101,15 +112,29 @@ impl<'c> Best<'c> {
                 .map(|(_, found)| self.objective.order(found.key.cost, found.key.heat));
         }
     }
+}
+
+impl<'c> Best<'c> {
+    pub(super) fn new(objective: Objective, most: usize, ceiling: i64) -> Best<'c> {
+        Best {
+            objective,
+            most: most.max(1),
+            ceiling,
+            charge: 0.0,
+            by_bill: BTreeMap::new(),
+            worst: None,
+        }
+    }
+
+    /// With a score that charges so much for the whole cap.
+    pub(super) fn set_charge(&mut self, charge: f64) {
+        self.charge = charge;
+    }
 
     /// Offers a build that another search found.
     pub(super) fn offer_found(&mut self, found: Found<'c>) {
-        let mut pieces: BTreeMap<PartId, u64> = BTreeMap::new();
-        for (part, qty) in found.build.uses() {
-            *pieces.entry(part.id).or_insert(0) += qty;
-        }
         let Found { key, build } = found;
-        self.offer(pieces.into_iter().collect(), key.cost, key.heat, || build);
+        self.offer(bill_of(&build), key.cost, key.heat, &mut || build.clone());
     }
 
     fn last(&self) -> Option<(&Bill, &Found<'c>)> {
@@ -124,4 +149,13 @@ impl<'c> Best<'c> {
         builds.sort_by(|a, b| a.key.compare(&b.key, objective));
         builds
     }
+}
+
+/// Pieces of each part, per unit.
+fn bill_of(build: &Build) -> Bill {
+    let mut pieces: BTreeMap<PartId, u64> = BTreeMap::new();
+    for (part, qty) in build.uses() {
+        *pieces.entry(part.id).or_insert(0) += qty;
+    }
+    pieces.into_iter().collect()
 }

@@ -3,28 +3,29 @@
 //! Invariant: knows columns, pieces, integers; no volts. Every build that leaves here has passed the full audit.
 
 mod best;
-mod columns;
+mod cap;
 mod combine;
 mod company;
+mod frame_build;
+mod frames;
+mod lists;
 mod milp;
-mod pool;
 mod search;
 mod tighten;
 
 pub use best::{Found, Key};
-pub use columns::columns_of;
 pub use company::{Companies, Company, Joint, Nearest, Reasons, Rejection, companies, rejections};
-pub use milp::{Answer, Solver, least};
+pub use milp::{Answer, Choices, Column, PlanChoice, Solver, least};
 
 use std::collections::BTreeSet;
 
 use crate::audit::{Site, audit};
 use crate::build::Build;
 use crate::catalogue::{Catalogue, PartId};
-use crate::screen::{Counts, Must, Objective, Stop};
+use crate::screen::{Counts, Must, Objective, Stop, Weights};
 use crate::supply::Supply;
 use best::Best;
-use search::{End, search};
+use search::{End, Ground, Search, everything};
 
 /// What is asked of the optimizer.
 #[derive(Debug, Clone)]
@@ -122,29 +123,16 @@ pub struct Disagreement {
 /// # Errors
 /// When the audit rejects a build that the search found: a bug to report.
 pub fn optimise<'c>(question: &Question<'c>) -> Result<Outcome<'c>, Disagreement> {
-    let mut best = Best::new(question.objective, question.top);
+    let mut best = Best::new(question.objective, question.top, ceiling(question));
     let mut counts = Counts::default();
-    if question.top == 1 && capped_elsewhere(question) {
-        // The best build by the other objective is the first that the cap can allow: none there, none at all. It may
-        // take half of the time; what it finds is a build to start with.
-        let other = Question {
-            objective: question.objective.other(),
-            stop: question.stop.half(),
-            ..question.clone()
-        };
-        let mut first = Best::new(other.objective, 1);
-        let open = search_all(&other, &mut first, &mut counts);
-        let found = first.into_builds();
-        if found.is_empty() && open.is_none() {
-            return Ok(Outcome {
-                builds: found,
-                proof: Proof::Proved,
-                counts,
-            });
+    let site = Site::new(question.supply).with_tightness(question.tightness);
+    let mut open: Option<i64> = None;
+    for in_rail in placements(question) {
+        let ground = Ground::new(&site, question.catalogue, &must(question, in_rail));
+        if let Some(bound) = search(&ground, question, &mut best, &mut counts) {
+            open = Some(open.map_or(bound, |so_far| so_far.min(bound)));
         }
-        found.into_iter().for_each(|found| best.offer_found(found));
     }
-    let open = search_all(question, &mut best, &mut counts);
     let builds = best.into_builds();
     for found in &builds {
         judge(question.supply, &found.build)?;
@@ -163,29 +151,48 @@ pub fn optimise<'c>(question: &Question<'c>) -> Result<Outcome<'c>, Disagreement
     Ok(Outcome { builds, proof, counts })
 }
 
-/// Searches every placement of the demanded parts; the least bound of those that were stopped, if any was.
-fn search_all<'c>(question: &Question<'c>, best: &mut Best<'c>, counts: &mut Counts) -> Option<i64> {
-    let site = Site::new(question.supply);
-    let mut open: Option<i64> = None;
-    for in_rail in placements(question) {
-        let must = Must {
-            without: question.without.clone(),
-            named: question.with.iter().map(|&(part, _)| part).collect(),
-            in_rail,
-        };
-        if let End::Stopped { bound } = search(&site, question, &must, best, counts) {
-            open = Some(open.map_or(bound, |so_far| so_far.min(bound)));
-        }
+/// Searches one ground for the best builds; the bound of the objective if it was stopped.
+fn search<'c>(ground: &Ground<'_, 'c>, question: &Question<'c>, best: &mut Best<'c>, counts: &mut Counts) -> Option<i64> {
+    let Some(charge) = cap::charge(ground, question, best, counts) else {
+        return None;
+    };
+    best.set_charge(charge.whole);
+    let end = Search::start(ground, question, charge.weights, counts).run(best, counts);
+    #[allow(clippy::cast_possible_truncation)] // saturates
+    match end {
+        End::Complete => None,
+        End::Stopped { bound } => Some((bound - charge.whole - 1.0).floor().max(0.0) as i64),
     }
-    open
 }
 
-/// Whether a cap binds what the objective does not minimise.
-fn capped_elsewhere(question: &Question) -> bool {
-    match question.objective {
-        Objective::Cost => question.supply.caps.heat_w.is_some(),
-        Objective::Heat => question.supply.caps.cost.is_some(),
+/// Everything that a question may choose from, unpruned, handed to `look`: for the second opinion on small catalogues.
+pub fn with_choices<R>(question: &Question, look: impl FnOnce(&Choices) -> R) -> R {
+    let site = Site::new(question.supply).with_tightness(question.tightness);
+    let ground = Ground::new(&site, question.catalogue, &must(question, Vec::new()));
+    let mut counts = Counts::default();
+    let mut search = Search::start(&ground, question, Weights::of(question.objective), &mut counts);
+    look(&everything(&mut search, &mut counts))
+}
+
+fn must(question: &Question, in_rail: Vec<BTreeSet<PartId>>) -> Must {
+    Must {
+        without: question.without.clone(),
+        named: question.with.iter().map(|&(part, _)| part).collect(),
+        in_rail,
     }
+}
+
+/// Nothing with an objective above this passes or is of interest: what is asked, and the supply's cap on it, which the
+/// audit lets pass by a rounding error.
+#[allow(clippy::cast_possible_truncation)] // saturates
+fn ceiling(question: &Question) -> i64 {
+    let caps = &question.supply.caps;
+    let cap = match question.objective {
+        Objective::Cost => caps.cost,
+        Objective::Heat => caps.heat_w,
+    };
+    let cap = cap.map_or(i64::MAX, |cap| (cap * 1e6 * (1.0 + 1e-8) + 2.0) as i64);
+    question.most.unwrap_or(i64::MAX).min(cap)
 }
 
 /// The full audit of a build that is about to leave.

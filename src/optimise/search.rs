@@ -1,233 +1,398 @@
-//! Owns the exact search: one column for each rail, with prices, stock and caps over the whole supply.
+//! Owns the exact search over frames, with prices, stock and caps over the whole supply.
 //!
-//! Deepening: every rail's walk is asked for the columns that can take part in a build with an objective of at most T;
-//! all their combinations up to T are searched; T rises until it has passed the N-th best build. What T has passed is
+//! Deepening: every outlet's walk is asked for the feeds that can take part in a build with a score of at most T; all
+//! combinations on all frames up to T are searched; T rises until it has passed all that is wanted. What T has passed is
 //! proved, so a search that is stopped still has a true bound.
 
 use super::Question;
-use super::best::Best;
-use super::columns::{RailColumns, Ready};
-use super::combine::{Combine, Run};
-use super::milp::{Answer, Solver, least as least_by_solver};
-use super::pool::Pool;
-use super::tighten::tighten;
-use crate::audit::{Site, compared, whole};
-use crate::catalogue::Part;
-use crate::screen::{Column, Counts, Must, Objective};
-use crate::units::Money;
+use super::best::Wanted;
+use super::combine::{Combine, Kept, List, Run, Setting, Work, slack};
+use super::frame_build::Judge;
+use super::frames::{Frame, frames};
+use super::lists::{Lists, Ready};
+use super::milp::{Answer, Choices, Column, PlanChoice, Solver, least as least_by_solver};
+use super::tighten::{heat_share, tighten};
+use crate::audit::Site;
+use crate::catalogue::Catalogue;
+use crate::screen::{Counts, Group, Must, Objective, Plan, Weights, plans};
 
 /// T starts at the least that any build can have and first rises by this share of it, then by twice as much each time.
-const FIRST_STEP: i64 = 64;
-
+const FIRST_STEP: f64 = 64.0;
+/// While the least is not settled, plans within this share above it are looked into together.
+const SETTLE_STEP: f64 = 256.0;
 /// Columns beyond which the solver's memory grows past reason.
 const MOST_SOLVER_COLUMNS: usize = 5_000;
 /// Longest time for one solver call.
 const SOLVER_SECONDS: f64 = 30.0;
 
-/// How a search ended.
-pub(super) enum End {
-    /// Nothing is left that could enter the list.
-    Complete,
-    /// Stopped; no build that was not looked at has an objective below the bound.
-    Stopped { bound: i64 },
+/// What may be built at all: groups of rails and plans of transformers.
+pub(super) struct Ground<'s, 'c> {
+    pub(super) site: &'s Site<'c>,
+    pub(super) groups: Vec<Group<'c>>,
+    pub(super) plans: Vec<Plan<'c>>,
+    /// Parts of the catalogue.
+    pub(super) parts: usize,
 }
 
-/// Searches one placement of the demanded parts.
-pub(super) fn search<'c>(
-    site: &Site<'c>,
-    question: &Question<'c>,
-    must: &Must,
-    best: &mut Best<'c>,
-    counts: &mut Counts,
-) -> End {
-    let stop = &question.stop;
-    let mut rails = RailColumns::start(site, question, must, counts);
-    on_every_rail(&mut rails, counts, |_, rail, counts| {
-        rail.one_more(i64::MAX, stop, counts);
-    });
-    let mut least = Vec::new();
-    for rail in &rails {
-        match rail.ready.first() {
-            Some(first) => least.push(first.key.0),
-            // Whoever stopped the walk before its first column has proved nothing.
-            None if stop.now() => return End::Stopped { bound: 0 },
-            None => return End::Complete,
+impl<'s, 'c> Ground<'s, 'c> {
+    pub(super) fn new(site: &'s Site<'c>, catalogue: &'c Catalogue, must: &Must) -> Ground<'s, 'c> {
+        let groups = Group::all(site, catalogue, must);
+        let parts = catalogue.parts().count();
+        let plans = plans(site, &groups, parts);
+        Ground {
+            site,
+            groups,
+            plans,
+            parts,
         }
     }
-    let base: i64 = least.iter().sum();
-    let parts = question.catalogue.parts().count();
-    offer_first(question, &rails, best, counts, parts);
-    let mut passed = base - 1;
-    // Heats are floored rail by rail and rounded in the sum: the first reach covers the difference.
-    let mut reach = base + i64::try_from(rails.len()).unwrap_or(0);
-    let mut step = (base / FIRST_STEP).max(1);
-    loop {
-        if let Some(worst) = best.worst() {
-            reach = reach.min(worst.0.max(base));
+}
+
+/// How a search ended.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub(super) enum End {
+    /// Nothing is left that could be wanted.
+    Complete,
+    /// Stopped; no build that was not looked at has a score below the bound.
+    Stopped { bound: f64 },
+}
+
+/// One search of a ground by one score.
+pub(super) struct Search<'g, 'c> {
+    ground: &'g Ground<'g, 'c>,
+    question: &'g Question<'c>,
+    lists: Lists<'g, 'c>,
+    least: Vec<f64>,
+}
+
+impl<'g, 'c> Search<'g, 'c> {
+    pub(super) fn start(
+        ground: &'g Ground<'g, 'c>,
+        question: &'g Question<'c>,
+        weights: Weights,
+        counts: &mut Counts,
+    ) -> Search<'g, 'c> {
+        let lists = Lists::start(ground.site, question, &ground.groups, &ground.plans, weights, counts);
+        let least = lists.least();
+        Search {
+            ground,
+            question,
+            lists,
+            least,
         }
-        on_every_rail(&mut rails, counts, |place, rail, counts| {
-            rail.extend(reach - (base - least[place]), stop, counts);
-        });
-        let ready: Vec<&[Ready]> = rails.iter().map(|rail| rail.ready.as_slice()).collect();
-        let kept = match question.objective {
-            Objective::Cost => tighten(&ready, parts, question.supply.builds, reach),
-            Objective::Heat => ready
-                .iter()
-                .map(|r| (0..r.len()).map(|i| (i, r[i].column.floor_cost.0)).collect())
-                .collect(),
-        };
-        let pool = Pool::new(question, &ready, kept, reach);
-        if stop.now() {
-            return End::Stopped { bound: passed + 1 };
-        }
-        // Only the single best can be asked of the solver, and not of too many columns.
-        let columns: usize = pool.by_rail.iter().map(Vec::len).sum();
-        let may_ask = question.top == 1 && columns <= MOST_SOLVER_COLUMNS;
-        let budget = if may_ask { question.node_budget } else { u64::MAX };
-        let mut run = Combine::new(question, &ready, &pool, best, counts, parts, reach).run(budget);
-        if run == Run::OutOfNodes {
-            run = match ask_solver(question, &ready, &pool, best, counts, parts, reach) {
-                // What remains is to settle ties up to that build, or the solver has shown that there is none.
-                Said::Least(value) => {
-                    passed = passed.max(value - 1);
-                    Combine::new(question, &ready, &pool, best, counts, parts, value).run(u64::MAX)
+    }
+
+    /// Least score of any build, as far as it is known.
+    pub(super) fn base(&self) -> f64 {
+        self.least.last().copied().unwrap_or(f64::INFINITY)
+    }
+
+    fn beside(&self, mask: u32) -> f64 {
+        self.least[(self.least.len() - 1) & !(mask as usize)]
+    }
+
+    /// Looks into plans until the first feeds of a cheapest cover are out; returns that cover, empty when there is none
+    /// or the search was stopped.
+    pub(super) fn settle(&mut self, counts: &mut Counts) -> Vec<usize> {
+        loop {
+            self.least = self.lists.least();
+            let base = self.base();
+            if !base.is_finite() || self.question.stop.now() {
+                return Vec::new();
+            }
+            let cover = self.lists.cheapest_cover(&self.least);
+            let settled = |&plan: &usize| self.lists.sources[plan].outflows.iter().all(|o| !o.ready.is_empty());
+            if cover.iter().all(settled) {
+                return cover;
+            }
+            let reach = base + (base / SETTLE_STEP).max(1.0);
+            for place in 0..self.lists.sources.len() {
+                let source = &self.lists.sources[place];
+                let beside = source.floor() + self.beside(source.plan.mask);
+                if beside <= reach {
+                    for outlet in 0..source.plan.outlets.len() {
+                        let own = self.lists.sources[place].outflows[outlet].floor();
+                        self.lists.ask(place, outlet, reach - (beside - own));
+                    }
                 }
-                Said::NothingWithinReach => Run::Whole,
-                Said::Nothing => Combine::new(question, &ready, &pool, best, counts, parts, reach).run(u64::MAX),
-            };
+            }
+            self.lists.bring(true, &self.question.stop, counts);
         }
-        if run != Run::Whole {
-            return End::Stopped { bound: passed + 1 };
+    }
+
+    /// What the first feeds of a cover take of what the objective does not minimise, in millionths, at least.
+    pub(super) fn second(&self, cover: &[usize], objective: Objective) -> f64 {
+        let sources = cover.iter().map(|&plan| &self.lists.sources[plan]);
+        let entries = sources.flat_map(|s| std::iter::once(&s.transformer).chain(s.outflows.iter().map(|o| &o.ready[0])));
+        #[allow(clippy::cast_precision_loss)]
+        let of = |ready: &Ready| match objective {
+            Objective::Cost => ready.heat_w * 1e6,
+            Objective::Heat => ready.floor as f64,
+        };
+        entries.map(of).sum()
+    }
+
+    /// Offers the first feeds of a cover: a build to start with, mostly within a few per cent of the best.
+    pub(super) fn offer_first(&self, cover: &[usize], wanted: &mut dyn Wanted<'c>, counts: &mut Counts) {
+        let mut plans = cover.to_vec();
+        plans.sort_by_key(|&plan| self.lists.sources[plan].plan.mask.trailing_zeros());
+        let lists = self.lists_of(&plans, |_, _| 1);
+        if lists.iter().any(|list| list.kept.is_empty()) {
+            return;
         }
-        passed = reach;
-        let found = best.worst().is_some_and(|worst| worst.0 <= reach);
-        let next = rails
-            .iter()
-            .zip(&least)
-            .filter_map(|(rail, least)| Some(rail.walk.floor()?.0 + base - least))
-            .min();
-        if found || beyond_cap(question, reach) {
+        let choice = vec![0; lists.len()];
+        let set = self.setting();
+        let mut work = self.work(wanted, counts);
+        Combine::new(&set, &plans, &lists, &mut work, f64::INFINITY).offer_choice(&choice);
+    }
+
+    fn setting(&self) -> Setting<'_, 'g, 'c> {
+        Setting {
+            question: self.question,
+            site: self.ground.site,
+            lists: &self.lists,
+            parts: self.ground.parts,
+        }
+    }
+
+    fn work<'w>(&self, wanted: &'w mut dyn Wanted<'c>, counts: &'w mut Counts) -> Work<'w, 'g, 'c> {
+        Work {
+            judge: Judge::new(self.ground.site),
+            wanted,
+            counts,
+        }
+    }
+
+    /// Searches everything that can be wanted.
+    pub(super) fn run(&mut self, wanted: &mut dyn Wanted<'c>, counts: &mut Counts) -> End {
+        let cover = self.settle(counts);
+        let base = self.base();
+        if !base.is_finite() {
             return End::Complete;
         }
-        reach = match next {
-            Some(next) => (reach + step).max(next),
-            // All columns are here, but a build may cost more than the least shares that they were let in by.
-            None if reach < dearest(question, &ready) => reach + step,
-            None => return End::Complete,
+        if self.question.stop.now() {
+            return End::Stopped { bound: base };
+        }
+        self.offer_first(&cover, wanted, counts);
+        let mut passed = base;
+        // Heats are floored one by one and rounded in the sum: the first reach covers the difference.
+        let mut reach = base + slack(base);
+        let mut step = (base / FIRST_STEP).max(1.0);
+        let mut work = self.work(wanted, counts);
+        loop {
+            reach = reach.min(work.wanted.limit().max(base) + slack(base));
+            self.least = self.lists.least();
+            let near = self.question.near.as_ref().map(|near| near.most);
+            let found = frames(&self.lists, self.ground.site, &self.least, reach, near);
+            for frame in &found {
+                for &plan in &frame.plans {
+                    for outlet in 0..self.lists.sources[plan].outflows.len() {
+                        let own = self.lists.sources[plan].outflows[outlet].floor();
+                        self.lists.ask(plan, outlet, reach - (frame.floor - own));
+                    }
+                }
+            }
+            self.lists.bring(false, &self.question.stop, work.counts);
+            if self.question.stop.now() {
+                return End::Stopped { bound: passed };
+            }
+            for frame in &found {
+                if frame.floor > reach.min(work.wanted.limit() + slack(reach)) {
+                    break;
+                }
+                if self.on(frame, reach, &mut work) != Run::Whole {
+                    return End::Stopped { bound: passed };
+                }
+            }
+            passed = reach;
+            if reach >= work.wanted.limit() {
+                return End::Complete;
+            }
+            self.least = self.lists.least();
+            let next = self.lists.next(&self.least);
+            reach = if next.is_finite() {
+                (reach + step).max(next + slack(next))
+            } else if reach < self.lists.dearest(self.question.supply.builds) {
+                // All feeds are here, but a build may score more than the least shares that they were let in by.
+                reach + step
+            } else {
+                return End::Complete;
+            };
+            step *= 2.0;
+        }
+    }
+
+    /// The lists of a frame with the first entries of each as far as `count` says.
+    fn lists_of<'f>(&'f self, plans: &[usize], count: impl Fn(usize, Option<usize>) -> usize) -> Vec<List<'f, 'c>> {
+        let mut lists = Vec::new();
+        for (at, &plan) in plans.iter().enumerate() {
+            let source = &self.lists.sources[plan];
+            let outflows = source.outflows.iter().enumerate();
+            let all = std::iter::once((None, std::slice::from_ref(&source.transformer)))
+                .chain(outflows.map(|(o, outflow)| (Some(o), outflow.ready.as_slice())));
+            for (outlet, ready) in all {
+                let kept = ready.iter().take(count(plan, outlet)).enumerate();
+                let kept = kept.map(|(place, ready)| Kept {
+                    place,
+                    floor: ready.floor,
+                    score: ready.score,
+                });
+                lists.push(List {
+                    plan: at,
+                    outlet,
+                    ready,
+                    kept: kept.collect(),
+                });
+            }
+        }
+        lists
+    }
+
+    /// Searches one frame.
+    fn on(&self, frame: &Frame, reach: f64, work: &mut Work<'_, 'g, 'c>) -> Run {
+        let most = reach.min(work.wanted.limit());
+        let most = most + slack(most);
+        let mut lists = self.lists_of(&frame.plans, |plan, outlet| match outlet {
+            None => 1,
+            Some(outlet) => {
+                let outflow = &self.lists.sources[plan].outflows[outlet];
+                let own = most - (frame.floor - outflow.floor());
+                outflow.ready.partition_point(|ready| ready.score <= own)
+            }
+        });
+        self.tightened(&mut lists, most);
+        if lists.iter().any(|list| list.kept.is_empty()) {
+            return Run::Whole;
+        }
+        let columns: usize = lists.iter().map(|list| list.kept.len()).sum();
+        // Only the single best can be asked of the solver, and not of too many columns.
+        let may_ask = self.may_ask() && columns <= MOST_SOLVER_COLUMNS;
+        let budget = if may_ask { self.question.node_budget } else { u64::MAX };
+        let set = self.setting();
+        let go = |budget: u64, reach: f64, work: &mut Work<'_, 'g, 'c>| {
+            Combine::new(&set, &frame.plans, &lists, work, reach).run(budget)
         };
-        step *= 2;
+        let run = go(budget, reach, work);
+        if run != Run::OutOfNodes {
+            return run;
+        }
+        match self.ask_solver(&set, frame, &lists, work) {
+            // What remains is to settle ties up to that build, or the solver has shown that there is none.
+            Said::Least(value) => go(u64::MAX, reach.min(value), work),
+            Said::NothingWithin => Run::Whole,
+            Said::Nothing => go(u64::MAX, reach, work),
+        }
+    }
+
+    /// Whether the solver's objective is what this search wants.
+    fn may_ask(&self) -> bool {
+        let question = self.question;
+        question.top == 1 && question.near.is_none() && self.lists.weights == Weights::of(question.objective)
+    }
+
+    /// Keeps what can still take part in a build with a score of at most `most`.
+    fn tightened(&self, lists: &mut [List<'_, 'c>], most: f64) {
+        let weights = self.lists.weights;
+        #[allow(clippy::float_cmp)] // set so, not computed
+        let by_cost = weights.cost == 1.0;
+        if !by_cost {
+            return;
+        }
+        let kept: Vec<Vec<(usize, i64)>> = (lists.iter())
+            .map(|list| list.kept.iter().map(|k| (k.place, k.floor)).collect())
+            .collect();
+        let ready: Vec<_> = lists.iter().map(|list| list.ready).collect();
+        let builds = self.question.supply.builds;
+        #[allow(clippy::cast_possible_truncation)] // saturates
+        let most = most.ceil() as i64;
+        let kept = tighten(&ready, kept, self.ground.parts, builds, weights, most);
+        for (list, kept) in lists.iter_mut().zip(kept) {
+            #[allow(clippy::cast_precision_loss)]
+            let kept = kept.into_iter().map(|(place, floor)| Kept {
+                place,
+                floor: floor - heat_share(&list.ready[place], weights),
+                score: floor as f64,
+            });
+            list.kept = kept.collect();
+        }
+    }
+
+    /// Asks the solver for the best choice on a frame. A choice is judged again here; that there is none is taken at
+    /// the solver's word.
+    fn ask_solver(
+        &self,
+        set: &Setting<'_, 'g, 'c>,
+        frame: &Frame,
+        lists: &[List<'_, 'c>],
+        work: &mut Work<'_, 'g, 'c>,
+    ) -> Said {
+        let column = |list: &List<'_, 'c>, kept: &Kept| Column::new(&list.ready[kept.place]);
+        let plans = frame.plans.iter().enumerate().map(|(at, &plan)| {
+            let outlets = lists.iter().filter(|l| l.plan == at && l.outlet.is_some());
+            PlanChoice {
+                plan: self.lists.sources[plan].plan,
+                outlets: outlets.map(|l| l.kept.iter().map(|k| column(l, k)).collect()).collect(),
+            }
+        });
+        let choices = Choices {
+            plans: plans.collect(),
+        };
+        let stop = &self.question.stop;
+        let left = stop.deadline.map_or(SOLVER_SECONDS, |at| {
+            let left = at.saturating_duration_since(std::time::Instant::now());
+            left.as_secs_f64().min(SOLVER_SECONDS)
+        });
+        work.counts.solver_calls += 1;
+        let objective = self.question.objective;
+        match least_by_solver(self.question.supply, objective, &choices, Solver::MicroLp, left) {
+            Answer::Least(chosen) => {
+                let of = |list: &List| match list.outlet {
+                    None => Some(0),
+                    Some(outlet) => {
+                        let (_, places) = chosen.iter().find(|(plan, _)| *plan == list.plan)?;
+                        Some(list.kept.get(*places.get(outlet)?)?.place)
+                    }
+                };
+                let Some(choice) = lists.iter().map(of).collect::<Option<Vec<usize>>>() else {
+                    return Said::Nothing;
+                };
+                let mut combine = Combine::new(set, &frame.plans, lists, work, f64::INFINITY);
+                match combine.offer_choice(&choice) {
+                    Some((cost, heat)) => Said::Least(self.lists.weights.score(cost, heat)),
+                    None => Said::Nothing,
+                }
+            }
+            Answer::Infeasible => Said::NothingWithin,
+            Answer::Undecided(_) => Said::Nothing,
+        }
     }
 }
 
-/// Works on every rail in a thread of its own: rails know nothing of each other, and the counts add up to the same
-/// whatever the machine. A thread that panics takes the program with it, since its columns would be missing.
-fn on_every_rail<'s, 'c>(
-    rails: &mut [RailColumns<'s, 'c>],
-    counts: &mut Counts,
-    work: impl Fn(usize, &mut RailColumns<'s, 'c>, &mut Counts) + Sync,
-) {
-    let work = &work;
-    std::thread::scope(|scope| {
-        let spawn = |(place, rail)| {
-            scope.spawn(move || {
-                let mut counts = Counts::default();
-                work(place, rail, &mut counts);
-                counts
-            })
-        };
-        let threads: Vec<_> = rails.iter_mut().enumerate().map(spawn).collect();
-        for thread in threads {
-            match thread.join() {
-                Ok(done) => counts.add(&done),
-                Err(panic) => std::panic::resume_unwind(panic),
-            }
-        }
-    });
-}
-
-/// What the integer program says about one round.
+/// What the integer program says about one frame.
 enum Said {
-    /// The least objective, within reach.
-    Least(i64),
-    /// No build within reach.
-    NothingWithinReach,
+    /// The least score.
+    Least(f64),
+    /// No build on it.
+    NothingWithin,
     /// It could not tell.
     Nothing,
 }
 
-/// Asks the solver for the best combination of the kept columns. A choice is judged again here; that there is none
-/// within reach is taken at the solver's word.
-fn ask_solver<'c>(
-    question: &Question<'c>,
-    ready: &[&[Ready<'c>]],
-    pool: &Pool,
-    best: &mut Best<'c>,
-    counts: &mut Counts,
-    parts: usize,
-    reach: i64,
-) -> Said {
-    let columns: Vec<Vec<Column<'c>>> = (ready.iter().zip(&pool.by_rail))
-        .map(|(ready, kept)| kept.iter().map(|k| ready[k.place].column.clone()).collect())
-        .collect();
-    let left = question.stop.deadline.map_or(SOLVER_SECONDS, |at| {
-        at.saturating_duration_since(std::time::Instant::now())
-            .as_secs_f64()
-            .min(SOLVER_SECONDS)
+/// Everything that a question may choose from, unpruned: for the second opinion on small catalogues.
+pub(super) fn everything<'g, 'c>(search: &'g mut Search<'_, 'c>, counts: &mut Counts) -> Choices<'g, 'c> {
+    for source in 0..search.lists.sources.len() {
+        for outlet in 0..search.lists.sources[source].outflows.len() {
+            search.lists.ask(source, outlet, f64::INFINITY);
+        }
+    }
+    search.lists.bring(false, &search.question.stop, counts);
+    let plans = search.lists.sources.iter().map(|source| PlanChoice {
+        plan: source.plan,
+        outlets: (source.outflows.iter())
+            .map(|outflow| outflow.ready.iter().map(Column::new).collect())
+            .collect(),
     });
-    counts.solver_calls += 1;
-    match least_by_solver(question.supply, question.objective, &columns, Solver::MicroLp, left) {
-        Answer::Least(choice) => {
-            match Combine::new(question, ready, pool, best, counts, parts, reach).offer_choice(&choice) {
-                Some(value) if value <= reach => Said::Least(value),
-                Some(_) => Said::NothingWithinReach,
-                None => Said::Nothing,
-            }
-        }
-        Answer::Infeasible => Said::NothingWithinReach,
-        Answer::Undecided(_) => Said::Nothing,
+    Choices {
+        plans: plans.collect(),
     }
-}
-
-/// Offers the combination of every rail's first column: a build to start with, mostly within a few per cent of the
-/// best, beyond which no column need be looked for.
-fn offer_first<'c>(
-    question: &Question<'c>,
-    rails: &[RailColumns<'_, 'c>],
-    best: &mut Best<'c>,
-    counts: &mut Counts,
-    parts: usize,
-) {
-    let ready: Vec<&[Ready]> = rails.iter().map(|rail| rail.ready.as_slice()).collect();
-    let most = dearest(question, &ready);
-    let first = ready
-        .iter()
-        .map(|ready| vec![(0, ready[0].column.floor_cost.0)])
-        .collect();
-    let pool = Pool::new(question, &ready, first, most);
-    if pool.by_rail.iter().all(|kept| !kept.is_empty()) {
-        let choice = vec![0; rails.len()];
-        Combine::new(question, &ready, &pool, best, counts, parts, most).offer_choice(&choice);
-    }
-}
-
-/// No combination has an objective above this: a price never rises with the pieces that others add.
-fn dearest(question: &Question, ready: &[&[Ready]]) -> i64 {
-    let most = |ready: &Ready| match question.objective {
-        Objective::Cost => {
-            let price = |&(part, pieces): &(&Part, u64)| part.unit_price(pieces * question.supply.builds) * pieces;
-            (ready.lines.iter().map(price).sum::<Money>() + ready.column.pass.fitted_price).0
-        }
-        Objective::Heat => compared(ready.heat_w) + 1,
-    };
-    ready.iter().filter_map(|rail| rail.iter().map(most).max()).sum()
-}
-
-/// Whether the supply's cap on the objective rules out everything above this.
-#[allow(clippy::cast_precision_loss)]
-fn beyond_cap(question: &Question, passed: i64) -> bool {
-    let cap = match question.objective {
-        Objective::Cost => whole::cost(question.supply, Money(passed)),
-        Objective::Heat => whole::heat(question.supply, Ok((passed - 1) as f64 * 1e-6)),
-    };
-    cap.is_some_and(|c| !c.met())
 }

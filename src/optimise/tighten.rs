@@ -1,35 +1,42 @@
-//! Owns the tighter bound on cost: which columns can still take part in a build of at most so much.
+//! Owns the tighter bound on scores: which feeds of a frame can still take part in a build of at most so much.
 //!
-//! A column's least price assumes that every other rail shares every part of it. But a rail that shares a part pays for
-//! that: it must take a column that holds the part, which is dearer than its cheapest. For a column c of rail i and any
-//! build with it, let S_p be the rails that share part p with it. Then
+//! A frame has one list for each transformer (with one entry) and one for each outlet. The least price of an entry
+//! assumes that every other list shares every part of it. But a list that shares a part pays for that: it must take an
+//! entry that holds the part, which is dearer than its cheapest. For an entry c of list i and any build with it, let S_p
+//! be the lists that share part p with it. Then
 //!
 //! ```text
-//! cost >= sum over p of q_p u(q_p + most that S_p use) + sum over rails j of (min_j + max over shared p of extra_j(p))
+//! cost >= sum over p of q_p u(q_p + most that S_p use) + sum over lists j of (min_j + max over shared p of extra_j(p))
 //! ```
 //!
-//! with min_j the least column of rail j and extra_j(p) what its least column with p costs more. The maximum is at least
+//! with min_j the least entry of list j and extra_j(p) what its least entry with p costs more. The maximum is at least
 //! the mean over the parts that could gain, so each part may be charged its share and the best S_p found part by part.
+//! A charge on heat adds the same to an entry whatever the others take, as fitted values do.
 
+use super::lists::Ready;
 use crate::catalogue::Part;
-
-use super::columns::Ready;
+use crate::screen::{Weights, heat_floor};
 use crate::units::Money;
 
-/// Rails beyond which subsets are no longer tried one by one.
-const MOST_SUBSET_RAILS: usize = 6;
+/// Lists beyond which subsets are no longer tried one by one.
+const MOST_SUBSET_LISTS: usize = 6;
 
-/// Columns of every rail, by place, that a build of cost at most `most` can still hold, each with its least price given
-/// what the others can share.
-pub(super) fn tighten(rails: &[&[Ready]], parts: usize, builds: u64, most: i64) -> Vec<Vec<(usize, i64)>> {
-    let mut kept: Vec<Vec<(usize, i64)>> = rails
-        .iter()
-        .map(|ready| (0..ready.len()).map(|i| (i, ready[i].key.0)).collect())
-        .collect();
-    if rails.len() == 1 {
-        kept[0].retain(|&(_, floor)| floor <= most);
-        return kept;
-    }
+/// Entries of every list, by place, that a build with a score of at most `most` can still hold, each with its least
+/// score given what the others can share. For scores in which cost counts once.
+pub(super) fn tighten(
+    lists: &[&[Ready]],
+    kept: Vec<Vec<(usize, i64)>>,
+    parts: usize,
+    builds: u64,
+    weights: Weights,
+    most: i64,
+) -> Vec<Vec<(usize, i64)>> {
+    let mut kept = kept;
+    let rails = lists;
+    let fixed = |ready: &Ready| ready.fitted.0 + heat_share(ready, weights);
+    let floor = |ready: &Ready, list: usize, uses: &[Uses]| floor(ready, list, uses, builds) + fixed(ready);
+    let shared_bound =
+        |ready: &Ready, list: usize, uses: &[Uses]| shared_bound(ready, list, uses, builds) + fixed(ready);
     loop {
         let before: usize = kept.iter().map(Vec::len).sum();
         let uses: Vec<Uses> = rails
@@ -40,14 +47,14 @@ pub(super) fn tighten(rails: &[&[Ready]], parts: usize, builds: u64, most: i64) 
         let floors: Vec<Vec<i64>> = (rails.iter().zip(&kept).enumerate())
             .map(|(i, (ready, kept))| {
                 kept.iter()
-                    .map(|&(place, _)| floor(&ready[place], i, &uses, builds))
+                    .map(|&(place, _)| floor(&ready[place], i, &uses))
                     .collect()
             })
             .collect();
         for (kept, floors) in kept.iter_mut().zip(floors) {
             kept.iter_mut().zip(floors).for_each(|(entry, floor)| entry.1 = floor);
         }
-        // The least column of each rail under the sharper floors, and what columns with each part cost more.
+        // The least entry of each list under the sharper floors, and what entries with each part cost more.
         let uses: Vec<Uses> = rails
             .iter()
             .zip(&kept)
@@ -61,7 +68,7 @@ pub(super) fn tighten(rails: &[&[Ready]], parts: usize, builds: u64, most: i64) 
                 .map(|(_, u)| u.least)
                 .sum();
             kept.retain(|&(place, floor)| {
-                floor + others <= most && shared_bound(&ready[place], i, &uses, builds) + others <= most
+                floor + others <= most && shared_bound(&ready[place], i, &uses) + others <= most
             });
             if kept.is_empty() {
                 return vec![Vec::new(); rails.len()];
@@ -77,11 +84,17 @@ pub(super) fn tighten(rails: &[&[Ready]], parts: usize, builds: u64, most: i64) 
     kept
 }
 
-/// What the kept columns of one rail use.
+/// What the charge on heat adds to an entry, rounded down.
+#[allow(clippy::cast_precision_loss, clippy::cast_possible_truncation)]
+pub(super) fn heat_share(ready: &Ready, weights: Weights) -> i64 {
+    (weights.heat * heat_floor(ready.heat_w) as f64).floor() as i64
+}
+
+/// What the kept entries of one list use.
 struct Uses {
     /// Least floor.
     least: i64,
-    /// By part: most pieces, and by how much the least column with it exceeds the least of all.
+    /// By part: most pieces, and by how much the least entry with it exceeds the least of all.
     by_part: Vec<(u64, i64)>,
 }
 
@@ -100,7 +113,7 @@ impl Uses {
     }
 }
 
-/// Price of a column when every other rail shares all that it can.
+/// Price of an entry when every other list shares all that it can.
 fn floor(ready: &Ready, rail: usize, uses: &[Uses], builds: u64) -> i64 {
     let others = |part: &Part| -> u64 {
         let id = part.id.0 as usize;
@@ -115,22 +128,22 @@ fn floor(ready: &Ready, rail: usize, uses: &[Uses], builds: u64) -> i64 {
         .iter()
         .map(|&(part, q)| part.least_cost(q, (q + others(part)) * builds))
         .sum();
-    (parts + ready.column.pass.fitted_price).0
+    parts.0
 }
 
-/// A part of a column that gets cheaper when others share it.
+/// A part of an entry that gets cheaper when others share it.
 struct Gaining<'c> {
     part: &'c Part,
     pieces: u64,
     /// Cost when nobody shares it.
     own: Money,
-    /// The rails that can share it, as (pieces, extra).
+    /// The lists that can share it, as (pieces, extra).
     sharing: Vec<(u64, i64)>,
 }
 
-/// Price of a column when sharing is charged for; see the module head.
+/// Price of an entry when sharing is charged for; see the module head.
 fn shared_bound(ready: &Ready, rail: usize, uses: &[Uses], builds: u64) -> i64 {
-    let mut alone = ready.column.pass.fitted_price;
+    let mut alone = Money(0);
     let mut gaining: Vec<Gaining> = Vec::new();
     for &(part, pieces) in &ready.lines {
         let own = part.least_cost(pieces, pieces * builds);
@@ -155,14 +168,14 @@ fn shared_bound(ready: &Ready, rail: usize, uses: &[Uses], builds: u64) -> i64 {
 }
 
 impl Gaining<'_> {
-    /// The most that sharing this part can save, each rail charged 1/`share` of what it pays for it (rounded down,
+    /// The most that sharing this part can save, each list charged 1/`share` of what it pays for it (rounded down,
     /// which only lets more through).
     fn most_gain(&self, share: i64, builds: u64) -> i64 {
         let gain = |more: u64, charged: i64| {
             self.own.0 - self.part.least_cost(self.pieces, (self.pieces + more) * builds).0 - charged
         };
-        if self.sharing.len() > MOST_SUBSET_RAILS {
-            // Whoever shares, at least one rail pays, and no more pieces than all of them can join.
+        if self.sharing.len() > MOST_SUBSET_LISTS {
+            // Whoever shares, at least one list pays, and no more pieces than all of them can join.
             let least = self.sharing.iter().map(|&(_, extra)| extra / share).min().unwrap_or(0);
             return gain(self.sharing.iter().map(|&(most, _)| most).sum(), least).max(0);
         }

@@ -1,10 +1,12 @@
-//! Owns what may come into question: for each rail the columns (one section with its device) that its own limits allow.
+//! Owns what may come into question: the groups of rails that may share a section, the plans of what a transformer can
+//! feed, and for each outlet of a plan the feeds (section, devices, sinks) that their own limits allow.
 //!
 //! Invariant: drops only what the audit would reject, by asking the audit's own functions or by bounds that are proved
 //! beside the code; never decides by a rule of its own.
 
 mod bounds;
-mod column;
+mod feed;
+mod plan;
 mod prices;
 mod reach;
 mod shelf;
@@ -12,12 +14,12 @@ mod solved;
 mod stop;
 mod walk;
 
-pub use column::Column;
-pub use prices::FloorPrices;
-pub use reach::Reach;
-pub use shelf::{Must, Shelf};
+pub use feed::Feed;
+pub use plan::{Outlet, Plan, plans};
+pub use reach::Group;
+pub use shelf::Must;
 pub use stop::Stop;
-pub use walk::Walk;
+pub use walk::{Apart, Walk, heat_floor};
 
 /// What is to be least.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -54,6 +56,34 @@ impl Objective {
             Objective::Cost => (cost, heat),
             Objective::Heat => (heat, cost),
         }
+    }
+}
+
+/// What a search adds up: so much for each millionth of the currency and for each microwatt.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Weights {
+    /// For each millionth of the currency.
+    pub cost: f64,
+    /// For each microwatt.
+    pub heat: f64,
+}
+
+impl Weights {
+    /// An objective alone. Scores are then whole numbers, exact below 2^53.
+    #[must_use]
+    pub fn of(objective: Objective) -> Weights {
+        let (cost, heat) = match objective {
+            Objective::Cost => (1.0, 0.0),
+            Objective::Heat => (0.0, 1.0),
+        };
+        Weights { cost, heat }
+    }
+
+    /// The score of a cost and a heat, or of lower bounds of them.
+    #[must_use]
+    #[allow(clippy::cast_precision_loss)] // both far below 2^53
+    pub fn score(self, cost: i64, heat: i64) -> f64 {
+        self.cost * cost as f64 + self.heat * heat as f64
     }
 }
 

@@ -1,10 +1,11 @@
-//! Owns which parts a rail may use: not withdrawn, not ruled out by the user, not ruled out by a limit of their own.
+//! Owns which parts a section may use: not withdrawn, not ruled out by the user, not ruled out by a limit of their own.
 
 use std::collections::BTreeSet;
 
-use crate::audit::{Check, Site, Stage, reservoir, transformer, whole};
-use crate::build::{device_serves, pieces_of_rectifier};
+use crate::audit::{Site, Stage, reservoir, transformer, whole};
+use crate::build::{device_serves, may_pair, pieces_of_rectifier};
 use crate::catalogue::{Catalogue, Part, PartId, Rectifier, Reservoir, Sink, Slot, Status, Transformer};
+use crate::supply::Path;
 
 /// What the user rules out or demands, by part.
 #[derive(Debug, Clone, Default)]
@@ -32,72 +33,89 @@ pub struct Bank<'c> {
     pub cans: u32,
 }
 
-/// The parts that one rail may use, each in catalogue order.
+/// The parts that one section and the devices behind it may use, each in catalogue order.
 #[derive(Debug, Clone)]
 pub struct Shelf<'c> {
-    /// Place of the rail.
-    pub rail: usize,
+    /// Places of the rails that the section feeds, rising.
+    pub rails: Vec<usize>,
+    /// Rectifier circuits that all of them allow.
+    pub paths: Vec<Path>,
     /// Transformers that hold by themselves.
     pub transformers: Vec<&'c Transformer>,
-    /// Rectifiers that serve one of the rail's paths.
+    /// Rectifiers that serve one of the paths.
     pub rectifiers: Vec<&'c Rectifier>,
     /// Every can with every number of them.
     pub banks: Vec<Bank<'c>>,
-    /// Devices that serve the rail and carry its current.
-    pub stages: Vec<Stage<'c>>,
+    /// By rail, devices that serve it and carry its current.
+    pub stages: Vec<Vec<Stage<'c>>>,
     /// All sinks.
     pub sinks: Vec<&'c Sink>,
-    /// Sinks that a column must hold.
-    pub must_sinks: BTreeSet<PartId>,
+    /// By rail, sinks that must stand in its section or on its device.
+    pub must_sinks: Vec<BTreeSet<PartId>>,
 }
 
 impl<'c> Shelf<'c> {
-    /// Fills the shelf of one rail.
+    /// Fills the shelf of a section that feeds these rails.
     #[must_use]
-    pub fn new(site: &Site<'c>, catalogue: &'c Catalogue, rail_place: usize, must: &Must) -> Shelf<'c> {
+    pub fn new(site: &Site<'c>, catalogue: &'c Catalogue, rails: &[usize], must: &Must) -> Shelf<'c> {
         let supply = site.supply;
-        let rail = &supply.rails[rail_place];
         let none = BTreeSet::new();
-        let demanded = must.in_rail.get(rail_place).unwrap_or(&none);
-        let demands = |slot: Slot| -> Vec<PartId> {
-            catalogue
-                .parts()
-                .filter(|p| p.slot == slot && demanded.contains(&p.id))
+        let demanded = |rail: usize| must.in_rail.get(rail).unwrap_or(&none);
+        let demands = |rail: usize, slot: Slot| -> BTreeSet<PartId> {
+            let of_slot = catalogue.parts().filter(|p| p.slot == slot);
+            of_slot
                 .map(|p| p.id)
+                .filter(|id| demanded(rail).contains(id))
                 .collect()
         };
-        let met = |check: Option<Check>| check.is_none_or(|c| c.met());
-        // Of every slot but sinks a rail holds one part, so what it must hold is all that it may hold.
-        let usable = |part: &Part, pieces: u64| {
-            let wanted = if part.slot == Slot::Sink {
-                Vec::new()
-            } else {
-                demands(part.slot)
-            };
+        let stocked = |part: &Part, pieces: u64| {
             must.allows(part)
-                && wanted.iter().all(|&id| id == part.id)
-                && met(whole::height(supply, part))
-                && met(whole::stock(supply, part, pieces))
+                && site.holds(whole::height(supply, part))
+                && site.holds(whole::stock(supply, part, pieces))
         };
+        // Of every slot but sinks a rail has one part, so what it must hold is all that it may hold.
+        let only = |rail: usize, slot: Slot, part: &Part| demands(rail, slot).iter().all(|&id| id == part.id);
+        let wanted: Vec<[BTreeSet<PartId>; 3]> = rails
+            .iter()
+            .map(|&rail| [Slot::Transformer, Slot::Rectifier, Slot::Reservoir].map(|slot| demands(rail, slot)))
+            .collect();
+        let usable = |part: &Part, pieces: u64| {
+            let place = part.slot as usize;
+            stocked(part, pieces) && wanted.iter().all(|of| of[place].iter().all(|&id| id == part.id))
+        };
+        let paths: Vec<Path> = Path::ALL
+            .into_iter()
+            .filter(|path| rails.iter().all(|&r| supply.rails[r].paths.contains(path)))
+            .filter(|&path| path != Path::Dual || may_pair(supply, rails))
+            .collect();
         let least_pieces = |rectifier: &Rectifier| {
-            rail.paths
-                .iter()
-                .map(|&p| pieces_of_rectifier(rectifier.kind, p))
-                .filter(|&n| n > 0)
-                .min()
+            let pieces = paths.iter().map(|&p| pieces_of_rectifier(rectifier.kind, p));
+            pieces.filter(|&n| n > 0).min()
         };
         // A can that does not last without ripple does not last with any.
         let lasts = |can: &Reservoir| {
-            rail.paths
-                .iter()
-                .any(|&path| reservoir::wear(site, can, path, Ok(0.0)).iter().all(Check::met))
+            paths.iter().any(|&path| {
+                let wear = reservoir::wear(site, can, path, Ok(0.0));
+                wear.into_iter().all(|check| site.holds(check))
+            })
+        };
+        let stages = |&rail: &usize| -> Vec<Stage<'c>> {
+            let fitting = catalogue.pass_devices.iter().filter(|d| {
+                stocked(&d.part, 1)
+                    && only(rail, Slot::Pass, &d.part)
+                    && device_serves(d, &supply.rails[rail], rails.len() == 1)
+            });
+            fitting
+                .map(|d| Stage::new(&supply.rails[rail], d))
+                .filter(|stage| site.holds(stage.current()))
+                .collect()
         };
         Shelf {
-            rail: rail_place,
             transformers: catalogue
                 .transformers
                 .iter()
-                .filter(|t| usable(&t.part, 1) && transformer::by_itself(site, t).iter().all(Check::met))
+                .filter(|t| usable(&t.part, 1))
+                .filter(|t| transformer::by_itself(site, t).into_iter().all(|check| site.holds(check)))
                 .collect(),
             rectifiers: catalogue
                 .rectifiers
@@ -110,15 +128,11 @@ impl<'c> Shelf<'c> {
                 .flat_map(|can| (1..=supply.caps.cans).map(move |cans| Bank { can, cans }))
                 .filter(|bank| usable(&bank.can.part, u64::from(bank.cans)) && lasts(bank.can))
                 .collect(),
-            stages: catalogue
-                .pass_devices
-                .iter()
-                .filter(|d| usable(&d.part, 1) && device_serves(d, rail, true))
-                .map(|d| Stage::new(rail, d))
-                .filter(|stage| stage.current().met())
-                .collect(),
-            sinks: catalogue.sinks.iter().filter(|s| usable(&s.part, 1)).collect(),
-            must_sinks: demands(Slot::Sink).into_iter().collect(),
+            stages: rails.iter().map(stages).collect(),
+            sinks: catalogue.sinks.iter().filter(|s| stocked(&s.part, 1)).collect(),
+            must_sinks: rails.iter().map(|&rail| demands(rail, Slot::Sink)).collect(),
+            rails: rails.to_vec(),
+            paths,
         }
     }
 }

@@ -1,30 +1,37 @@
 //! Owns one raw section under one load: its steady states, solved when asked for, and what they rule out.
 
 use super::Counts;
-use super::reach::carries;
-use crate::audit::{Check, Corner, Known, NoWave, Raw, SectionHeat, Site, Stage, rectifier, reservoir};
+use super::reach::{carries, loads};
+use crate::audit::{Check, Corner, Known, NoWave, Raw, SectionHeat, Site, Stage, rectifier, reservoir, transformer};
 use crate::physics::raw_section::Waveform;
-use crate::physics::winding::WindingLoad;
 
-/// Losses of a section with its device at high mains.
+/// Losses of a section with its devices at high mains.
 pub(super) struct Losses {
     pub(super) section_w: f64,
     pub(super) package_w: f64,
-    pub(super) pass_w: f64,
+    /// By rail.
+    pub(super) pass_w: Vec<f64>,
+    /// The same with the other rails of the section idle; empty for a rail that has the section to itself.
+    pub(super) alone_w: Vec<f64>,
+    /// Apparent power of its windings.
+    pub(super) va: f64,
 }
 
 /// The steady states of one section under one load, solved when asked for.
 pub(super) struct Solved {
     pub(super) load_a: f64,
+    /// What the transformer's other sections draw at least: rated volts times load.
+    others_va: f64,
     waves: [Option<Known<Waveform>>; 3],
     /// Whether transformer, rectifier and cans hold at the high corner.
     holds: Option<bool>,
 }
 
 impl Solved {
-    pub(super) fn new(load_a: f64) -> Solved {
+    pub(super) fn new(load_a: f64, others_va: f64) -> Solved {
         Solved {
             load_a,
+            others_va,
             waves: [None; 3],
             holds: None,
         }
@@ -39,17 +46,8 @@ impl Solved {
         };
         if self.waves[slot].is_none() {
             counts.solves += 1;
-            let own = [WindingLoad {
-                volts_v: raw.hookup.volts_v,
-                load_a: self.load_a,
-            }];
-            self.waves[slot] = Some(
-                raw.wave(site, corner, Ok(self.load_a), Ok(&own))
-                    .map_err(|why| match why {
-                        NoWave::Missing(column) => column,
-                        NoWave::Collapse(_) => COLLAPSED,
-                    }),
-            );
+            let all = loads(raw.hookup, self.load_a, self.others_va);
+            self.waves[slot] = Some(known(raw.wave(site, corner, Ok(self.load_a), Ok(&all))));
         }
         match &self.waves[slot] {
             Some(Ok(wave)) => Ok(wave),
@@ -58,54 +56,72 @@ impl Solved {
         }
     }
 
-    /// Whether any of these devices, all with at least this load, can still stand behind the section. As the load
-    /// rises, the valley falls and the source current rises at every instant: what fails here stays so.
+    /// Whether transformer and rectifier can carry at least this load. As the load rises, the valley falls and the
+    /// source current rises at every instant: what fails here stays so, and so does headroom.
     ///
     /// Proof: let u be the capacitor voltage less ESR I (constant load I). Then C u' = (v_s - drop - u)+/(R + ESR) - I,
     /// so more I lowers u at every instant of the periodic state and raises i = (v_s - drop - u)+/(R + ESR); and the
     /// raw voltage u + ESR i rises with u, so its valley falls. More crest, less R or less drop raise u the same way.
-    pub(super) fn hope<'x>(
+    pub(super) fn feeds(&mut self, site: &Site, raw: &Raw, counts: &mut Counts) -> bool {
+        let load_a = self.load_a;
+        feeds(site, raw, load_a, self.wave(site, raw, Corner::High, counts))
+    }
+
+    /// Everything but the junctions; the losses if it holds. With other sections on the transformer the low corner is
+    /// as kind as it can be, so it drops only what no neighbours can mend; the audit of the whole plan decides.
+    pub(super) fn losses(
         &mut self,
         site: &Site,
         raw: &Raw,
-        mut stages: impl Iterator<Item = &'x Stage<'x>>,
+        stages: &[&Stage],
         counts: &mut Counts,
-    ) -> bool {
-        let low = self.wave(site, raw, Corner::Low, counts);
-        if !stages.any(|stage| stage.headroom(site, low).met()) {
-            return false;
-        }
+    ) -> Option<Losses> {
         let load_a = self.load_a;
-        feeds(raw, load_a, self.wave(site, raw, Corner::High, counts))
-    }
-
-    /// Everything but the junctions; the losses if it holds.
-    pub(super) fn losses(&mut self, site: &Site, raw: &Raw, stage: &Stage, counts: &mut Counts) -> Option<Losses> {
-        let load_a = self.load_a;
-        let met = |check: Option<Check>| check.is_none_or(|c| c.met());
         let low = self.wave(site, raw, Corner::Low, counts).copied();
         let low = low.as_ref().map_err(|&column| column);
-        if !stage.headroom(site, low).met() || !met(stage.ride_through(site, raw, Ok(load_a), low)) {
-            return None;
+        for stage in stages {
+            if !site.holds(stage.headroom(site, low)) || !site.holds(stage.ride_through(site, raw, Ok(load_a), low)) {
+                return None;
+            }
         }
         let high = self.wave(site, raw, Corner::High, counts).copied();
         let high = high.as_ref().map_err(|&column| column);
         let holds = *self
             .holds
-            .get_or_insert_with(|| feeds(raw, load_a, high) && lasts(site, raw, high));
-        if !holds || !met(stage.accuracy(low, high)) {
+            .get_or_insert_with(|| feeds(site, raw, load_a, high) && lasts(site, raw, high));
+        if !holds || !stages.iter().all(|stage| site.holds(stage.accuracy(low, high))) {
             return None;
         }
-        if stage.rail.ripple_v.is_some() {
+        if stages.iter().any(|stage| stage.rail.ripple_v.is_some()) {
+            let shared = self.others_va > 0.0;
             let worn = self.wave(site, raw, Corner::Worn, counts);
-            if !met(stage.ripple(low, high, worn)) {
-                return None;
+            for stage in stages {
+                let ripple = stage.ripple(low, high, worn);
+                // More resistance lowers the valley but has no sign on the ripple at the low corner.
+                let may_change = shared && ripple.is_some_and(|c| c.corner == Some(Corner::Low));
+                if !may_change && !site.holds(ripple) {
+                    return None;
+                }
             }
         }
+        let mut alone_w = Vec::new();
+        if stages.len() > 1 {
+            for (place, stage) in stages.iter().enumerate() {
+                let alone_a: Known<f64> = (stages.iter().enumerate()).try_fold(0.0, |sum, (other, its)| {
+                    Ok(sum + if other == place { its.load_a()? } else { its.idle_a()? })
+                });
+                counts.solves += 1;
+                let wave = known(raw.wave(site, Corner::Alone, alone_a, Ok(&[])));
+                alone_w.push(stage.loss_w(wave.as_ref().map_err(|&column| column)).ok()?);
+            }
+        }
+        let rms_a = high.map(Waveform::source_rms_a).ok()?;
         Some(Losses {
             section_w: SectionHeat::new(site, raw, Ok(load_a), high).ok()?.sum_w(),
             package_w: rectifier::package_loss_w(site, raw, high).ok()?,
-            pass_w: stage.loss_w(high).ok()?,
+            pass_w: stages.iter().map(|stage| stage.loss_w(high).ok()).collect::<Option<_>>()?,
+            alone_w,
+            va: transformer::section_va(raw.hookup, raw.path, rms_a),
         })
     }
 }
@@ -113,16 +129,22 @@ impl Solved {
 /// Stands for a waveform that does not exist; every limit that needs it then fails.
 const COLLAPSED: &str = "collapse";
 
+fn known(wave: Result<Waveform, NoWave>) -> Known<Waveform> {
+    wave.map_err(|why| match why {
+        NoWave::Missing(column) => column,
+        NoWave::Collapse(_) => COLLAPSED,
+    })
+}
+
 /// The limits of transformer and rectifier that hang on the source current at the high corner; what fails one fails it
 /// at any higher load.
-fn feeds(raw: &Raw, load_a: f64, high: Known<&Waveform>) -> bool {
+fn feeds(site: &Site, raw: &Raw, load_a: f64, high: Known<&Waveform>) -> bool {
     let rms_a = high.map(Waveform::source_rms_a);
-    rectifier::current(raw, high).met() && carries(raw.transformer, raw.hookup, raw.path, rms_a, load_a)
+    site.holds(rectifier::current(raw, high)) && carries(site, raw.transformer, raw.hookup, raw.path, rms_a, load_a)
 }
 
 /// Whether the cans last at the high corner.
 fn lasts(site: &Site, raw: &Raw, high: Known<&Waveform>) -> bool {
-    reservoir::wear(site, raw.reservoir, raw.path, reservoir::ripple_a(raw, high))
-        .iter()
-        .all(Check::met)
+    let wear: [Check; 3] = reservoir::wear(site, raw.reservoir, raw.path, reservoir::ripple_a(raw, high));
+    wear.into_iter().all(|check| site.holds(check))
 }
