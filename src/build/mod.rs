@@ -11,8 +11,8 @@ use std::collections::BTreeMap;
 
 pub use distance::{Change, Place, changes, distance, places, wiring};
 pub use hookup::{Hookup, HookupKind, Windings, hookups, windings};
-pub use sharing::{may_pair, may_share};
 pub use rules::{Misfit, device_serves, diodes_in_path, misfits, pieces_of_rectifier, sink_takes};
+pub use sharing::{may_pair, may_share};
 
 use crate::catalogue::{Part, PartId, PassDevice, Rectifier, Reservoir, Sink, Transformer};
 use crate::supply::{Path, Supply};

@@ -35,8 +35,14 @@ pub(super) fn charge<'c>(
         Objective::Heat => caps.cost,
     };
     let weights = |charge: f64| match question.objective {
-        Objective::Cost => Weights { cost: 1.0, heat: charge },
-        Objective::Heat => Weights { cost: charge, heat: 1.0 },
+        Objective::Cost => Weights {
+            cost: 1.0,
+            heat: charge,
+        },
+        Objective::Heat => Weights {
+            cost: charge,
+            heat: 1.0,
+        },
     };
     let free = Charge {
         weights: weights(0.0),

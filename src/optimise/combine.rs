@@ -43,6 +43,23 @@ pub(super) struct List<'f, 'c> {
     pub(super) kept: Vec<Kept>,
 }
 
+impl<'f, 'c> List<'f, 'c> {
+    /// With the entries at these places.
+    pub(super) fn new(plan: usize, outlet: Option<usize>, ready: &'f [Ready<'c>], places: &[usize]) -> List<'f, 'c> {
+        let kept = |&place: &usize| Kept {
+            place,
+            floor: ready[place].floor,
+            score: ready[place].score,
+        };
+        List {
+            plan,
+            outlet,
+            ready,
+            kept: places.iter().map(kept).collect(),
+        }
+    }
+}
+
 /// What all runs share.
 pub(super) struct Setting<'f, 'a, 'c> {
     pub(super) question: &'f Question<'c>,
@@ -115,7 +132,7 @@ impl<'f, 'w, 's, 'a, 'c> Combine<'f, 'w, 's, 'a, 'c> {
             .map(|depth| {
                 let plan = lists[order[depth]].plan;
                 let last = order[depth + 1..].iter().all(|&l| lists[l].plan != plan);
-                let sections = set.lists.sources[plans[plan]].outflows.len();
+                let sections = set.lists.sources[plans[plan]].views.len();
                 (last && sections > 1).then_some(plan)
             })
             .collect();
@@ -169,7 +186,11 @@ impl<'f, 'w, 's, 'a, 'c> Combine<'f, 'w, 's, 'a, 'c> {
         let decided = score(weights, so_far.cost, so_far.heat_w);
         let near = self.set.question.near.as_ref().map_or(usize::MAX, |near| near.most);
         for index in 0..self.lists[at].kept.len() {
-            let Kept { place, floor, score: own } = self.lists[at].kept[index];
+            let Kept {
+                place,
+                floor,
+                score: own,
+            } = self.lists[at].kept[index];
             self.work.counts.nodes += 1;
             if self.work.counts.nodes.is_multiple_of(4096) && self.set.question.stop.now() {
                 self.ended = Some(Run::Stopped);
@@ -238,7 +259,7 @@ impl<'f, 'w, 's, 'a, 'c> Combine<'f, 'w, 's, 'a, 'c> {
     fn carried(&mut self, depth: usize) -> bool {
         let list = &self.lists[self.order[depth]];
         let source = &self.set.lists.sources[self.plans[list.plan]];
-        if source.outflows.len() < 2 {
+        if source.views.len() < 2 {
             return true;
         }
         let decided = self.order[..=depth].iter().map(|&l| (l, &self.lists[l]));
@@ -247,7 +268,11 @@ impl<'f, 'w, 's, 'a, 'c> Combine<'f, 'w, 's, 'a, 'c> {
             .filter(|(_, l)| l.outlet.is_some_and(|o| source.plan.outlets[o].path != Path::Dual))
             .map(|(l, list)| list.ready[self.chosen[l]].va)
             .sum();
-        if !self.set.site.holds(transformer::load(source.plan.transformer, Ok(va * (1.0 - 1e-12)))) {
+        if !self
+            .set
+            .site
+            .holds(transformer::load(source.plan.transformer, Ok(va * (1.0 - 1e-12))))
+        {
             return false;
         }
         match self.completes[depth] {
@@ -318,8 +343,11 @@ impl<'f, 'w, 's, 'a, 'c> Combine<'f, 'w, 's, 'a, 'c> {
         let fed: Vec<Fed<'_, 'c>> = (self.plans.iter().enumerate())
             .map(|(place, &source)| {
                 let source = &self.set.lists.sources[source];
-                let feeds = self.places(place).into_iter().zip(&source.outflows);
-                let feeds: Vec<&Feed<'c>> = feeds.filter_map(|(at, o)| o.ready[at].feed.as_ref()).collect();
+                let feeds = self.places(place).into_iter().zip(&source.views);
+                let flows = &self.set.lists.flows;
+                let feeds: Vec<&Feed<'c>> = feeds
+                    .filter_map(|(at, view)| flows[view.flow].ready[at].feed.as_ref())
+                    .collect();
                 (source.plan, feeds)
             })
             .collect();

@@ -2,7 +2,7 @@
 
 use std::collections::BTreeMap;
 
-use super::lists::{Lists, Ready};
+use super::lists::Lists;
 use crate::audit::{Site, audit, total_w};
 use crate::build::{Build, Instance, RailChoice, Section, section_id, transformer_id};
 use crate::screen::{Feed, Outlet, Plan};
@@ -105,13 +105,9 @@ impl<'s, 'c> Judge<'s, 'c> {
             (supply.caps.cost, supply.caps.heat_w) = (None, None);
             supply
         });
-        let outflows = &lists.sources[source].outflows;
-        let feed = |(place, outflow): (&usize, &super::lists::Outflow<'_, 'c>)| -> Option<Feed<'c>> {
-            let ready: &Ready<'c> = outflow.ready.get(*place)?;
-            ready.feed.clone()
-        };
-        let feeds: Vec<Feed<'c>> = places.iter().zip(outflows).filter_map(feed).collect();
-        let build = build(&[(plan, feeds.iter().collect())], &rails);
+        let views = places.iter().zip(&lists.sources[source].views);
+        let feeds = views.filter_map(|(&place, view)| lists.flows[view.flow].ready[place].feed.as_ref());
+        let build = build(&[(plan, feeds.collect())], &rails);
         let verdict = audit(supply, &build);
         let holds = verdict.heat_w.is_some() && verdict.margins.iter().all(|margin| self.site.holds(margin.check));
         self.known.insert((source, places.to_vec()), holds);

@@ -86,7 +86,10 @@ impl Finder<'_, '_, '_> {
         for &place in chosen {
             let plan = lists.sources[place].plan;
             let id = plan.transformer.part.id;
-            let count = chosen.iter().filter(|&&p| lists.sources[p].plan.transformer.part.id == id).count() as u64;
+            let count = chosen
+                .iter()
+                .filter(|&&p| lists.sources[p].plan.transformer.part.id == id)
+                .count() as u64;
             // Each at the price of all: what the floor took is replaced.
             let price = plan.transformer.part.unit_price(count * self.site.supply.builds);
             floor += lists.weights.score(price.0 - plan.floor_cost, 0);

@@ -9,7 +9,7 @@ use super::best::Bill;
 use crate::audit::{Check, Site, whole};
 use crate::build::{Place, wiring};
 use crate::catalogue::Part;
-use crate::screen::{Apart, Counts, Feed, Group, Plan, Stop, Walk, Weights, heat_floor};
+use crate::screen::{Apart, Counts, Feed, FlowKey, Group, Outlet, Plan, Stop, Walk, Weights, heat_floor};
 use crate::units::Money;
 
 /// Two feeds with the same lines whose heats differ by more than this never tie in whole microwatts.
@@ -32,25 +32,16 @@ pub(super) struct Ready<'c> {
     pub(super) feed: Option<Feed<'c>>,
 }
 
-/// One outlet: its walk and the feeds that came of it so far, in the order of their scores.
-pub(super) struct Outflow<'a, 'c> {
+/// One source with its walk and the feeds that came of it so far, in the order of their scores. Plans that use the source
+/// share it: but for the low corner a section knows nothing of the others on its transformer.
+pub(super) struct Flow<'a, 'c> {
     walk: Walk<'a, 'c>,
     pub(super) ready: Vec<Ready<'c>>,
-    /// Least heat by lines: of equal lines only the coolest can matter, where nothing else tells them apart.
-    coolest: Option<BTreeMap<Bill, f64>>,
     /// Score up to which feeds are asked for.
     need: f64,
 }
 
-impl<'c> Outflow<'_, 'c> {
-    /// Least score of any of its feeds.
-    pub(super) fn floor(&self) -> f64 {
-        match self.ready.first() {
-            Some(first) => first.score,
-            None => self.to_come(),
-        }
-    }
-
+impl<'c> Flow<'_, 'c> {
     /// Least score of the feeds that have not come yet.
     fn to_come(&self) -> f64 {
         self.walk.floor().unwrap_or(f64::INFINITY)
@@ -58,37 +49,85 @@ impl<'c> Outflow<'_, 'c> {
 
     /// Asks the walk for the next feed up to `most`; false when there is none or it was told to stop.
     fn one_more(&mut self, most: f64, stop: &Stop, counts: &mut Counts) -> bool {
-        while let Some((feed, score)) = self.walk.next(most, stop, counts) {
-            let lines = feed.lines();
-            let heat_w = feed.heat_w();
-            if let Some(coolest) = &mut self.coolest {
-                let bill: Bill = lines.iter().map(|&(part, pieces)| (part.id, pieces)).collect();
-                let coolest = coolest.entry(bill).or_insert(f64::INFINITY);
-                if heat_w > *coolest + NEVER_TIES_W {
-                    continue;
-                }
-                *coolest = coolest.min(heat_w);
-            }
-            self.ready.push(Ready {
-                score,
-                floor: feed.floor_cost.0,
-                heat_w,
-                lines,
-                fitted: feed.fitted(),
-                va: feed.va,
-                changes: feed.changes,
-                feed: Some(feed),
-            });
-            return true;
-        }
-        false
+        let Some((feed, score)) = self.walk.next(most, stop, counts) else {
+            return false;
+        };
+        self.ready.push(Ready {
+            score,
+            floor: feed.floor_cost.0,
+            heat_w: feed.heat_w(),
+            lines: feed.lines(),
+            fitted: feed.fitted(),
+            va: feed.va,
+            changes: feed.changes,
+            feed: Some(feed),
+        });
+        true
     }
 }
 
-/// A plan with its outlets' lists.
+/// One outlet of a plan: which feeds of its source hold beside the plan's other sections, as far as is looked at.
+pub(super) struct View {
+    pub(super) flow: usize,
+    /// Places of those that hold.
+    pub(super) held: Vec<usize>,
+    /// So many were looked at.
+    seen: usize,
+    /// Least heat by lines: of equal lines only the coolest can matter, where nothing else tells them apart.
+    coolest: Option<BTreeMap<Bill, f64>>,
+    /// Places that may differ from the build to stay close to.
+    most_changes: usize,
+    /// Least score of those that hold, or of those that were not looked at.
+    floor: f64,
+    /// Score from which they are asked to be looked at.
+    need: f64,
+}
+
+impl View {
+    /// Least score of any of its feeds.
+    pub(super) fn floor(&self) -> f64 {
+        self.floor
+    }
+
+    /// Least score of what was not looked at.
+    fn to_come(&self, flow: &Flow) -> f64 {
+        flow.ready
+            .get(self.seen)
+            .map_or_else(|| flow.to_come(), |next| next.score)
+    }
+
+    fn is_coolest(&mut self, ready: &Ready) -> bool {
+        let Some(coolest) = &mut self.coolest else { return true };
+        let bill: Bill = ready.lines.iter().map(|&(part, pieces)| (part.id, pieces)).collect();
+        let coolest = coolest.entry(bill).or_insert(f64::INFINITY);
+        let may_matter = ready.heat_w <= *coolest + NEVER_TIES_W;
+        *coolest = coolest.min(ready.heat_w);
+        may_matter
+    }
+
+    /// Looks at what has come; only up to the first that holds if `only_first`.
+    fn look(&mut self, site: &Site, groups: &[Group], outlet: &Outlet, flow: &Flow, only_first: bool) {
+        while let Some(ready) = flow.ready.get(self.seen) {
+            if only_first && !self.held.is_empty() {
+                break;
+            }
+            let holds = |feed: &Feed| feed.changes <= self.most_changes && feed.holds_beside(site, groups, outlet);
+            if ready.feed.as_ref().is_some_and(holds) && self.is_coolest(ready) {
+                self.held.push(self.seen);
+            }
+            self.seen += 1;
+        }
+        self.floor = match self.held.first() {
+            Some(&first) => flow.ready[first].score,
+            None => self.to_come(flow),
+        };
+    }
+}
+
+/// A plan with its outlets' views.
 pub(super) struct Source<'a, 'c> {
     pub(super) plan: &'a Plan<'c>,
-    pub(super) outflows: Vec<Outflow<'a, 'c>>,
+    pub(super) views: Vec<View>,
     /// The transformer as an entry of its own.
     pub(super) transformer: Ready<'c>,
     /// Places that the transformer and the wiring of its rails change.
@@ -98,16 +137,22 @@ pub(super) struct Source<'a, 'c> {
 impl Source<'_, '_> {
     /// Least score of the whole plan.
     pub(super) fn floor(&self) -> f64 {
-        self.transformer.score + self.outflows.iter().map(Outflow::floor).sum::<f64>()
+        self.transformer.score + self.views.iter().map(View::floor).sum::<f64>()
     }
 }
 
 /// All plans with their lists.
 pub(super) struct Lists<'a, 'c> {
+    site: &'a Site<'c>,
+    groups: &'a [Group<'c>],
+    pub(super) flows: Vec<Flow<'a, 'c>>,
     pub(super) sources: Vec<Source<'a, 'c>>,
     pub(super) weights: Weights,
     rails: usize,
 }
+
+/// Feeds that are brought at once while only first ones are wanted.
+const HANDFUL: usize = 4;
 
 impl<'a, 'c> Lists<'a, 'c> {
     /// Starts every walk.
@@ -119,36 +164,41 @@ impl<'a, 'c> Lists<'a, 'c> {
         weights: Weights,
         counts: &mut Counts,
     ) -> Lists<'a, 'c> {
-        counts.sources += plans.iter().map(|p| p.outlets.len() as u64).sum::<u64>();
         let rails = question.supply.rails.len();
         let changes: Vec<usize> = plans.iter().map(|plan| plan_changes(question, plan)).collect();
         let elsewhere = least_changes(plans, &changes, rails);
         let all = (1_usize << rails) - 1;
+        let most = question.near.as_ref().map_or(usize::MAX, |near| near.most);
+        let mut places: BTreeMap<FlowKey, usize> = BTreeMap::new();
+        let mut wanted: Vec<(&Outlet<'c>, usize)> = Vec::new();
         let mut sources = Vec::new();
         for (plan, changes) in plans.iter().zip(changes) {
             let beside = changes.saturating_add(elsewhere[all & !(plan.mask as usize)]);
-            let most = question.near.as_ref().map_or(usize::MAX, |near| near.most);
             if beside > most {
                 continue;
             }
             let single = plan.outlets.len() == 1 && plan.mask.count_ones() == 1 && question.near.is_none();
-            let outflows = (plan.outlets.iter())
-                .map(|outlet| {
-                    let apart = question.near.as_ref().map(|near| Apart {
-                        rails: outlet.rails.iter().map(|&r| near.places[r].clone()).collect(),
-                        most: most - beside,
-                    });
-                    Outflow {
-                        walk: Walk::new(site, groups, outlet, weights, apart),
-                        ready: Vec::new(),
-                        coolest: single.then(BTreeMap::new),
-                        need: f64::NEG_INFINITY,
-                    }
-                })
-                .collect();
+            let mut views = Vec::with_capacity(plan.outlets.len());
+            for outlet in &plan.outlets {
+                let flow = *places.entry(outlet.flow_key()).or_insert_with(|| {
+                    wanted.push((outlet, 0));
+                    wanted.len() - 1
+                });
+                let most_changes = most - beside;
+                wanted[flow].1 = wanted[flow].1.max(most_changes);
+                views.push(View {
+                    flow,
+                    held: Vec::new(),
+                    seen: 0,
+                    coolest: single.then(BTreeMap::new),
+                    most_changes,
+                    floor: f64::NEG_INFINITY,
+                    need: f64::NEG_INFINITY,
+                });
+            }
             sources.push(Source {
                 plan,
-                outflows,
+                views,
                 transformer: Ready {
                     score: weights.score(plan.floor_cost, heat_floor(plan.core_w)),
                     floor: plan.floor_cost,
@@ -162,11 +212,32 @@ impl<'a, 'c> Lists<'a, 'c> {
                 changes,
             });
         }
-        Lists {
+        counts.sources += wanted.len() as u64;
+        let flow = |(outlet, most): (&Outlet<'c>, usize)| {
+            let apart = question.near.as_ref().map(|near| Apart {
+                rails: outlet.rails.iter().map(|&r| near.places[r].clone()).collect(),
+                most,
+            });
+            Flow {
+                walk: Walk::new(site, groups, outlet, weights, apart),
+                ready: Vec::new(),
+                need: f64::NEG_INFINITY,
+            }
+        };
+        let mut lists = Lists {
+            site,
+            groups,
+            flows: wanted.into_iter().map(flow).collect(),
             sources,
             weights,
             rails,
+        };
+        for source in &mut lists.sources {
+            for view in &mut source.views {
+                view.floor = lists.flows[view.flow].to_come();
+            }
         }
+        lists
     }
 
     /// By set of rails, the least score of plans that feed just them.
@@ -201,47 +272,38 @@ impl<'a, 'c> Lists<'a, 'c> {
 
     /// Asks for the feeds of one outlet up to a score.
     pub(super) fn ask(&mut self, source: usize, outlet: usize, score: f64) {
-        let need = &mut self.sources[source].outflows[outlet].need;
-        *need = need.max(score);
+        let view = &mut self.sources[source].views[outlet];
+        view.need = view.need.max(score);
+        let flow = &mut self.flows[view.flow];
+        flow.need = flow.need.max(score);
     }
 
-    /// Brings what was asked for: all of it, or only the first feed of each list. Outlets know nothing of each other, so
-    /// the result is the same whatever the threads.
+    /// Brings what was asked for, and takes it as answered: all of it, or a few feeds of each list so that the next that
+    /// holds may be among them. Sources know nothing of each other, so the result is the same whatever the threads.
     pub(super) fn bring(&mut self, only_first: bool, stop: &Stop, counts: &mut Counts) {
-        let asked: Vec<&mut Outflow<'a, 'c>> = (self.sources.iter_mut())
-            .flat_map(|source| source.outflows.iter_mut())
-            .filter(|o| o.need >= o.to_come() && !(only_first && !o.ready.is_empty()))
+        let flows = self
+            .flows
+            .iter_mut()
+            .filter(|flow| flow.need >= flow.to_come())
             .collect();
-        let work = |outflow: &mut Outflow<'a, 'c>, counts: &mut Counts| {
-            let need = outflow.need;
-            while outflow.one_more(need, stop, counts) && !only_first {}
-        };
-        let threads = std::thread::available_parallelism().map_or(1, usize::from).min(asked.len());
-        if threads < 2 {
-            asked.into_iter().for_each(|outflow| work(outflow, counts));
-            return;
-        }
-        let queue = Mutex::new(asked.into_iter());
-        let next = || queue.lock().ok().and_then(|mut queue| queue.next());
-        std::thread::scope(|scope| {
-            let spawn = |_| {
-                scope.spawn(|| {
-                    let mut counts = Counts::default();
-                    while let Some(outflow) = next() {
-                        work(outflow, &mut counts);
-                    }
-                    counts
-                })
-            };
-            let workers: Vec<_> = (0..threads).map(spawn).collect();
-            for worker in workers {
-                match worker.join() {
-                    Ok(done) => counts.add(&done),
-                    // A thread that panics takes the program with it, since its feeds would be missing.
-                    Err(panic) => std::panic::resume_unwind(panic),
-                }
+        on_threads(flows, counts, |flow: &mut Flow<'a, 'c>, counts| {
+            let mut left = if only_first { HANDFUL } else { usize::MAX };
+            while left > 0 && flow.one_more(flow.need, stop, counts) {
+                left -= 1;
             }
         });
+        let flows = &self.flows;
+        let (site, groups) = (self.site, self.groups);
+        let views = self
+            .sources
+            .iter_mut()
+            .flat_map(|source| source.views.iter_mut().zip(&source.plan.outlets));
+        let asked: Vec<(&mut View, &Outlet<'c>)> = views.filter(|(view, _)| view.need > f64::NEG_INFINITY).collect();
+        on_threads(asked, counts, |(view, outlet), _| {
+            view.look(site, groups, outlet, &flows[view.flow], only_first);
+            view.need = f64::NEG_INFINITY;
+        });
+        self.flows.iter_mut().for_each(|flow| flow.need = f64::NEG_INFINITY);
     }
 
     /// Least score of a build with a feed that has not come yet; infinite when all have.
@@ -249,8 +311,8 @@ impl<'a, 'c> Lists<'a, 'c> {
         let all = least.len() - 1;
         let of = |source: &Source| {
             let beside = source.floor() + least[all & !(source.plan.mask as usize)];
-            (source.outflows.iter())
-                .map(|outflow| beside - outflow.floor() + outflow.to_come())
+            (source.views.iter())
+                .map(|view| beside - view.floor() + view.to_come(&self.flows[view.flow]))
                 .filter(|score| !score.is_nan())
                 .fold(f64::INFINITY, f64::min)
         };
@@ -260,18 +322,22 @@ impl<'a, 'c> Lists<'a, 'c> {
     /// No combination of what has come scores above this: a price never rises with the pieces that others add.
     pub(super) fn dearest(&self, builds: u64) -> f64 {
         let price = |lines: &[(&Part, u64)]| -> i64 {
-            lines.iter().map(|&(part, pieces)| (part.unit_price(pieces * builds) * pieces).0).sum()
+            lines
+                .iter()
+                .map(|&(part, pieces)| (part.unit_price(pieces * builds) * pieces).0)
+                .sum()
         };
         let mut by_rail = vec![0.0_f64; self.rails];
         for source in &self.sources {
             let transformer = price(&[(&source.plan.transformer.part, 1)]);
             let mut most = self.weights.score(transformer, heat_floor(source.plan.core_w) + 1);
-            for outflow in &source.outflows {
-                let of = |r: &Ready| {
-                    let heat = heat_floor(r.heat_w) + 2;
-                    self.weights.score(price(&r.lines) + r.fitted.0, heat)
+            for view in &source.views {
+                let of = |&place: &usize| {
+                    let ready = &self.flows[view.flow].ready[place];
+                    let heat = heat_floor(ready.heat_w) + 2;
+                    self.weights.score(price(&ready.lines) + ready.fitted.0, heat)
                 };
-                most += outflow.ready.iter().map(of).fold(0.0, f64::max);
+                most += view.held.iter().map(of).fold(0.0, f64::max);
             }
             // Counted with the first rail of the plan.
             let rail = &mut by_rail[source.plan.mask.trailing_zeros() as usize];
@@ -284,11 +350,46 @@ impl<'a, 'c> Lists<'a, 'c> {
     pub(super) fn stocked(&self, site: &Site, plans: &[usize]) -> bool {
         plans.iter().all(|&p| {
             let part = &self.sources[p].plan.transformer.part;
-            let count = plans.iter().filter(|&&q| self.sources[q].plan.transformer.part.id == part.id).count();
+            let count = plans
+                .iter()
+                .filter(|&&q| self.sources[q].plan.transformer.part.id == part.id)
+                .count();
             let check: Option<Check> = whole::stock(site.supply, part, count as u64);
             site.holds(check)
         })
     }
+}
+
+/// Works on every item, on as many threads as the machine has; the counts add up to the same whatever their number.
+fn on_threads<T: Send>(items: Vec<T>, counts: &mut Counts, work: impl Fn(T, &mut Counts) + Sync) {
+    let threads = std::thread::available_parallelism()
+        .map_or(1, usize::from)
+        .min(items.len());
+    if threads < 2 {
+        items.into_iter().for_each(|item| work(item, counts));
+        return;
+    }
+    let queue = Mutex::new(items.into_iter());
+    let next = || queue.lock().ok().and_then(|mut queue| queue.next());
+    std::thread::scope(|scope| {
+        let spawn = |_| {
+            scope.spawn(|| {
+                let mut counts = Counts::default();
+                while let Some(item) = next() {
+                    work(item, &mut counts);
+                }
+                counts
+            })
+        };
+        let workers: Vec<_> = (0..threads).map(spawn).collect();
+        for worker in workers {
+            match worker.join() {
+                Ok(done) => counts.add(&done),
+                // A thread that panics takes the program with it, since its share would be missing.
+                Err(panic) => std::panic::resume_unwind(panic),
+            }
+        }
+    });
 }
 
 /// By set of rails the least sum over disjoint sets that make it up.

@@ -105,7 +105,11 @@ pub fn least(supply: &Supply, objective: Objective, choices: &Choices, solver: S
         taken.push(Taken { plan, feeds });
     }
     for rail in 0..supply.rails.len() {
-        let feeding = choices.plans.iter().zip(&taken).filter(|(p, _)| p.plan.mask & (1 << rail) != 0);
+        let feeding = choices
+            .plans
+            .iter()
+            .zip(&taken)
+            .filter(|(p, _)| p.plan.mask & (1 << rail) != 0);
         rows.push(constraint!(feeding.map(|(_, t)| t.plan).sum::<Expression>() == 1.0));
     }
     // As wide as the audit's rounding, and more: what the rows let through is judged again, what they cut is gone.

@@ -152,7 +152,12 @@ pub fn optimise<'c>(question: &Question<'c>) -> Result<Outcome<'c>, Disagreement
 }
 
 /// Searches one ground for the best builds; the bound of the objective if it was stopped.
-fn search<'c>(ground: &Ground<'_, 'c>, question: &Question<'c>, best: &mut Best<'c>, counts: &mut Counts) -> Option<i64> {
+fn search<'c>(
+    ground: &Ground<'_, 'c>,
+    question: &Question<'c>,
+    best: &mut Best<'c>,
+    counts: &mut Counts,
+) -> Option<i64> {
     let Some(charge) = cap::charge(ground, question, best, counts) else {
         return None;
     };

@@ -9,7 +9,7 @@ use super::best::Wanted;
 use super::combine::{Combine, Kept, List, Run, Setting, Work, slack};
 use super::frame_build::Judge;
 use super::frames::{Frame, frames};
-use super::lists::{Lists, Ready};
+use super::lists::{Lists, Ready, View};
 use super::milp::{Answer, Choices, Column, PlanChoice, Solver, least as least_by_solver};
 use super::tighten::{heat_share, tighten};
 use crate::audit::Site;
@@ -101,7 +101,7 @@ impl<'g, 'c> Search<'g, 'c> {
                 return Vec::new();
             }
             let cover = self.lists.cheapest_cover(&self.least);
-            let settled = |&plan: &usize| self.lists.sources[plan].outflows.iter().all(|o| !o.ready.is_empty());
+            let settled = |&plan: &usize| self.lists.sources[plan].views.iter().all(|view| !view.held.is_empty());
             if cover.iter().all(settled) {
                 return cover;
             }
@@ -111,7 +111,7 @@ impl<'g, 'c> Search<'g, 'c> {
                 let beside = source.floor() + self.beside(source.plan.mask);
                 if beside <= reach {
                     for outlet in 0..source.plan.outlets.len() {
-                        let own = self.lists.sources[place].outflows[outlet].floor();
+                        let own = self.lists.sources[place].views[outlet].floor();
                         self.lists.ask(place, outlet, reach - (beside - own));
                     }
                 }
@@ -123,7 +123,8 @@ impl<'g, 'c> Search<'g, 'c> {
     /// What the first feeds of a cover take of what the objective does not minimise, in millionths, at least.
     pub(super) fn second(&self, cover: &[usize], objective: Objective) -> f64 {
         let sources = cover.iter().map(|&plan| &self.lists.sources[plan]);
-        let entries = sources.flat_map(|s| std::iter::once(&s.transformer).chain(s.outflows.iter().map(|o| &o.ready[0])));
+        let first = |view: &View| &self.lists.flows[view.flow].ready[view.held[0]];
+        let entries = sources.flat_map(|s| std::iter::once(&s.transformer).chain(s.views.iter().map(first)));
         #[allow(clippy::cast_precision_loss)]
         let of = |ready: &Ready| match objective {
             Objective::Cost => ready.heat_w * 1e6,
@@ -136,11 +137,11 @@ impl<'g, 'c> Search<'g, 'c> {
     pub(super) fn offer_first(&self, cover: &[usize], wanted: &mut dyn Wanted<'c>, counts: &mut Counts) {
         let mut plans = cover.to_vec();
         plans.sort_by_key(|&plan| self.lists.sources[plan].plan.mask.trailing_zeros());
-        let lists = self.lists_of(&plans, |_, _| 1);
+        let lists = self.lists_of(&plans, |_| 1);
         if lists.iter().any(|list| list.kept.is_empty()) {
             return;
         }
-        let choice = vec![0; lists.len()];
+        let choice: Vec<usize> = lists.iter().map(|list| list.kept[0].place).collect();
         let set = self.setting();
         let mut work = self.work(wanted, counts);
         Combine::new(&set, &plans, &lists, &mut work, f64::INFINITY).offer_choice(&choice);
@@ -186,8 +187,8 @@ impl<'g, 'c> Search<'g, 'c> {
             let found = frames(&self.lists, self.ground.site, &self.least, reach, near);
             for frame in &found {
                 for &plan in &frame.plans {
-                    for outlet in 0..self.lists.sources[plan].outflows.len() {
-                        let own = self.lists.sources[plan].outflows[outlet].floor();
+                    for outlet in 0..self.lists.sources[plan].views.len() {
+                        let own = self.lists.sources[plan].views[outlet].floor();
                         self.lists.ask(plan, outlet, reach - (frame.floor - own));
                     }
                 }
@@ -222,27 +223,21 @@ impl<'g, 'c> Search<'g, 'c> {
         }
     }
 
-    /// The lists of a frame with the first entries of each as far as `count` says.
-    fn lists_of<'f>(&'f self, plans: &[usize], count: impl Fn(usize, Option<usize>) -> usize) -> Vec<List<'f, 'c>> {
+    /// The lists of a frame with the first entries of each outlet as far as `count` says.
+    fn lists_of(&self, plans: &[usize], count: impl Fn(&View) -> usize) -> Vec<List<'_, 'c>> {
         let mut lists = Vec::new();
         for (at, &plan) in plans.iter().enumerate() {
             let source = &self.lists.sources[plan];
-            let outflows = source.outflows.iter().enumerate();
-            let all = std::iter::once((None, std::slice::from_ref(&source.transformer)))
-                .chain(outflows.map(|(o, outflow)| (Some(o), outflow.ready.as_slice())));
-            for (outlet, ready) in all {
-                let kept = ready.iter().take(count(plan, outlet)).enumerate();
-                let kept = kept.map(|(place, ready)| Kept {
-                    place,
-                    floor: ready.floor,
-                    score: ready.score,
-                });
-                lists.push(List {
-                    plan: at,
-                    outlet,
+            let ready = std::slice::from_ref(&source.transformer);
+            lists.push(List::new(at, None, ready, &[0]));
+            for (outlet, view) in source.views.iter().enumerate() {
+                let ready = &self.lists.flows[view.flow].ready;
+                lists.push(List::new(
+                    at,
+                    Some(outlet),
                     ready,
-                    kept: kept.collect(),
-                });
+                    &view.held[..count(view).min(view.held.len())],
+                ));
             }
         }
         lists
@@ -252,13 +247,10 @@ impl<'g, 'c> Search<'g, 'c> {
     fn on(&self, frame: &Frame, reach: f64, work: &mut Work<'_, 'g, 'c>) -> Run {
         let most = reach.min(work.wanted.limit());
         let most = most + slack(most);
-        let mut lists = self.lists_of(&frame.plans, |plan, outlet| match outlet {
-            None => 1,
-            Some(outlet) => {
-                let outflow = &self.lists.sources[plan].outflows[outlet];
-                let own = most - (frame.floor - outflow.floor());
-                outflow.ready.partition_point(|ready| ready.score <= own)
-            }
+        let mut lists = self.lists_of(&frame.plans, |view| {
+            let own = most - (frame.floor - view.floor());
+            let ready = &self.lists.flows[view.flow].ready;
+            view.held.partition_point(|&place| ready[place].score <= own)
         });
         self.tightened(&mut lists, most);
         if lists.iter().any(|list| list.kept.is_empty()) {
@@ -334,9 +326,7 @@ impl<'g, 'c> Search<'g, 'c> {
                 outlets: outlets.map(|l| l.kept.iter().map(|k| column(l, k)).collect()).collect(),
             }
         });
-        let choices = Choices {
-            plans: plans.collect(),
-        };
+        let choices = Choices { plans: plans.collect() };
         let stop = &self.question.stop;
         let left = stop.deadline.map_or(SOLVER_SECONDS, |at| {
             let left = at.saturating_duration_since(std::time::Instant::now());
@@ -381,18 +371,19 @@ enum Said {
 /// Everything that a question may choose from, unpruned: for the second opinion on small catalogues.
 pub(super) fn everything<'g, 'c>(search: &'g mut Search<'_, 'c>, counts: &mut Counts) -> Choices<'g, 'c> {
     for source in 0..search.lists.sources.len() {
-        for outlet in 0..search.lists.sources[source].outflows.len() {
+        for outlet in 0..search.lists.sources[source].views.len() {
             search.lists.ask(source, outlet, f64::INFINITY);
         }
     }
     search.lists.bring(false, &search.question.stop, counts);
     let plans = search.lists.sources.iter().map(|source| PlanChoice {
         plan: source.plan,
-        outlets: (source.outflows.iter())
-            .map(|outflow| outflow.ready.iter().map(Column::new).collect())
+        outlets: (source.views.iter())
+            .map(|view| {
+                let ready = &search.lists.flows[view.flow].ready;
+                view.held.iter().map(|&place| Column::new(&ready[place])).collect()
+            })
             .collect(),
     });
-    Choices {
-        plans: plans.collect(),
-    }
+    Choices { plans: plans.collect() }
 }

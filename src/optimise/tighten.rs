@@ -45,11 +45,7 @@ pub(super) fn tighten(
             .map(|(ready, kept)| Uses::new(ready, kept, parts))
             .collect();
         let floors: Vec<Vec<i64>> = (rails.iter().zip(&kept).enumerate())
-            .map(|(i, (ready, kept))| {
-                kept.iter()
-                    .map(|&(place, _)| floor(&ready[place], i, &uses))
-                    .collect()
-            })
+            .map(|(i, (ready, kept))| kept.iter().map(|&(place, _)| floor(&ready[place], i, &uses)).collect())
             .collect();
         for (kept, floors) in kept.iter_mut().zip(floors) {
             kept.iter_mut().zip(floors).for_each(|(entry, floor)| entry.1 = floor);

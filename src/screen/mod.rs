@@ -15,7 +15,7 @@ mod stop;
 mod walk;
 
 pub use feed::Feed;
-pub use plan::{Outlet, Plan, plans};
+pub use plan::{FlowKey, Outlet, Plan, plans};
 pub use reach::Group;
 pub use shelf::Must;
 pub use stop::Stop;

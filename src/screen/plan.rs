@@ -32,6 +32,19 @@ pub struct Outlet<'c> {
     pub(super) others_va: f64,
 }
 
+/// What tells apart the walks of outlets: group, source, the rectifier of a dual pair, and whether the outlet holds the
+/// secondaries.
+pub type FlowKey = (usize, usize, Option<PartId>, bool);
+
+impl Outlet<'_> {
+    /// Outlets with the same key have the same feeds, the low corner beside other sections aside.
+    #[must_use]
+    pub fn flow_key(&self) -> FlowKey {
+        let rectifier = self.rectifier.map(|r| r.part.id);
+        (self.group, self.source, rectifier, !self.hookup.secondaries.is_empty())
+    }
+}
+
 /// A transformer with all that it feeds.
 #[derive(Debug, Clone)]
 pub struct Plan<'c> {
@@ -72,7 +85,12 @@ pub fn plans<'c>(site: &Site<'c>, groups: &[Group<'c>], parts: usize) -> Vec<Pla
     let rails = site.supply.rails.len();
     let most = most_by_rail(site, groups, rails, parts);
     let prices: BTreeMap<u32, FloorPrices> = (1_u32..1 << rails)
-        .map(|mask| (mask, prices_but_for(site, &most, mask, mask.count_ones() as usize, parts)))
+        .map(|mask| {
+            (
+                mask,
+                prices_but_for(site, &most, mask, mask.count_ones() as usize, parts),
+            )
+        })
         .collect();
     let mut found = Vec::new();
     for options in by_transformer.values() {
@@ -232,7 +250,10 @@ impl<'c> Planner<'_, 'c> {
                 let places = &self.windings[draft.windings].places[from..from + count];
                 hookup.secondaries.extend_from_slice(places);
             }
-            let others_va = (0..drawn.len()).filter(|&other| other != d).map(|other| drawn[other]).sum();
+            let others_va = (0..drawn.len())
+                .filter(|&other| other != d)
+                .map(|other| drawn[other])
+                .sum();
             outlets.push(Outlet {
                 group: draft.group,
                 source: draft.source,

@@ -254,15 +254,23 @@ fn with_devices<'c>(site: &Site<'c>, shelf: &Shelf<'c>, mut source: Source<'c>) 
     let mut lists: Vec<Vec<(usize, f64, f64)>> = Vec::new();
     for kinds in &shelf.stages {
         let fitting = kinds.iter().enumerate().filter(|(_, stage)| rated(stage));
-        let mut list: Vec<(usize, f64, f64)> =
-            fitting.filter_map(|(i, stage)| known(stage).map(|(load_a, level_v)| (i, load_a, level_v))).collect();
+        let mut list: Vec<(usize, f64, f64)> = fitting
+            .filter_map(|(i, stage)| known(stage).map(|(load_a, level_v)| (i, load_a, level_v)))
+            .collect();
         list.sort_by(|a, b| a.1.total_cmp(&b.1).then(a.0.cmp(&b.0)));
         lists.push(list);
     }
-    let least: Vec<f64> = lists.iter().map(|list| list.first().map(|&(_, load_a, _)| load_a)).collect::<Option<_>>()?;
+    let least: Vec<f64> = lists
+        .iter()
+        .map(|list| list.first().map(|&(_, load_a, _)| load_a))
+        .collect::<Option<_>>()?;
     for (rail, list) in lists.iter_mut().enumerate() {
         // Rails in their order, as the audit adds them up.
-        let with = |load_a: f64| -> f64 { (0..least.len()).map(|r| if r == rail { load_a } else { least[r] }).sum() };
+        let with = |load_a: f64| -> f64 {
+            (0..least.len())
+                .map(|r| if r == rail { load_a } else { least[r] })
+                .sum()
+        };
         list.retain(|&(_, load_a, level_v)| reaches(site, &source, with(load_a), level_v));
         if list.is_empty() {
             return None;
@@ -273,12 +281,19 @@ fn with_devices<'c>(site: &Site<'c>, shelf: &Shelf<'c>, mut source: Source<'c>) 
         .map(|(list, kinds)| {
             let floor_v = |&(i, _, _): &(usize, f64, f64)| kinds[i].floor_v.unwrap_or(f64::INFINITY);
             (
-                let_through_v(list.iter().map(|&(_, _, level_v)| level_v).fold(f64::INFINITY, f64::min)),
+                let_through_v(
+                    list.iter()
+                        .map(|&(_, _, level_v)| level_v)
+                        .fold(f64::INFINITY, f64::min),
+                ),
                 let_through_v(list.iter().map(floor_v).fold(f64::INFINITY, f64::min)),
             )
         })
         .collect();
-    source.stages = lists.into_iter().map(|list| list.into_iter().map(|(i, ..)| i).collect()).collect();
+    source.stages = lists
+        .into_iter()
+        .map(|list| list.into_iter().map(|(i, ..)| i).collect())
+        .collect();
     Some(source)
 }
 

@@ -63,10 +63,7 @@ impl<'c> Shelf<'c> {
         let demanded = |rail: usize| must.in_rail.get(rail).unwrap_or(&none);
         let demands = |rail: usize, slot: Slot| -> BTreeSet<PartId> {
             let of_slot = catalogue.parts().filter(|p| p.slot == slot);
-            of_slot
-                .map(|p| p.id)
-                .filter(|id| demanded(rail).contains(id))
-                .collect()
+            of_slot.map(|p| p.id).filter(|id| demanded(rail).contains(id)).collect()
         };
         let stocked = |part: &Part, pieces: u64| {
             must.allows(part)
@@ -115,7 +112,11 @@ impl<'c> Shelf<'c> {
                 .transformers
                 .iter()
                 .filter(|t| usable(&t.part, 1))
-                .filter(|t| transformer::by_itself(site, t).into_iter().all(|check| site.holds(check)))
+                .filter(|t| {
+                    transformer::by_itself(site, t)
+                        .into_iter()
+                        .all(|check| site.holds(check))
+                })
                 .collect(),
             rectifiers: catalogue
                 .rectifiers

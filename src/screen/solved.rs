@@ -15,23 +15,22 @@ pub(super) struct Losses {
     pub(super) alone_w: Vec<f64>,
     /// Apparent power of its windings.
     pub(super) va: f64,
+    /// Whether all holds with the transformer to itself too.
+    pub(super) alone_holds: bool,
 }
 
 /// The steady states of one section under one load, solved when asked for.
 pub(super) struct Solved {
     pub(super) load_a: f64,
-    /// What the transformer's other sections draw at least: rated volts times load.
-    others_va: f64,
     waves: [Option<Known<Waveform>>; 3],
     /// Whether transformer, rectifier and cans hold at the high corner.
     holds: Option<bool>,
 }
 
 impl Solved {
-    pub(super) fn new(load_a: f64, others_va: f64) -> Solved {
+    pub(super) fn new(load_a: f64) -> Solved {
         Solved {
             load_a,
-            others_va,
             waves: [None; 3],
             holds: None,
         }
@@ -46,7 +45,7 @@ impl Solved {
         };
         if self.waves[slot].is_none() {
             counts.solves += 1;
-            let all = loads(raw.hookup, self.load_a, self.others_va);
+            let all = loads(raw.hookup, self.load_a, 0.0);
             self.waves[slot] = Some(known(raw.wave(site, corner, Ok(self.load_a), Ok(&all))));
         }
         match &self.waves[slot] {
@@ -67,15 +66,9 @@ impl Solved {
         feeds(site, raw, load_a, self.wave(site, raw, Corner::High, counts))
     }
 
-    /// Everything but the junctions; the losses if it holds. With other sections on the transformer the low corner is
-    /// as kind as it can be, so it drops only what no neighbours can mend; the audit of the whole plan decides.
-    pub(super) fn losses(
-        &mut self,
-        site: &Site,
-        raw: &Raw,
-        stages: &[&Stage],
-        counts: &mut Counts,
-    ) -> Option<Losses> {
+    /// Everything but the junctions; the losses if it holds. At the low corner the section has its transformer to itself,
+    /// which is as kind as it can be: beside others the audit of the whole plan decides.
+    pub(super) fn losses(&mut self, site: &Site, raw: &Raw, stages: &[&Stage], counts: &mut Counts) -> Option<Losses> {
         let load_a = self.load_a;
         let low = self.wave(site, raw, Corner::Low, counts).copied();
         let low = low.as_ref().map_err(|&column| column);
@@ -92,15 +85,17 @@ impl Solved {
         if !holds || !stages.iter().all(|stage| site.holds(stage.accuracy(low, high))) {
             return None;
         }
+        let mut alone_holds = true;
         if stages.iter().any(|stage| stage.rail.ripple_v.is_some()) {
-            let shared = self.others_va > 0.0;
             let worn = self.wave(site, raw, Corner::Worn, counts);
             for stage in stages {
                 let ripple = stage.ripple(low, high, worn);
-                // More resistance lowers the valley but has no sign on the ripple at the low corner.
-                let may_change = shared && ripple.is_some_and(|c| c.corner == Some(Corner::Low));
-                if !may_change && !site.holds(ripple) {
-                    return None;
+                if !site.holds(ripple) {
+                    // Beside other sections more resistance lowers the valley, but has no sign on the ripple itself.
+                    if ripple.is_none_or(|c| c.corner != Some(Corner::Low)) {
+                        return None;
+                    }
+                    alone_holds = false;
                 }
             }
         }
@@ -119,9 +114,13 @@ impl Solved {
         Some(Losses {
             section_w: SectionHeat::new(site, raw, Ok(load_a), high).ok()?.sum_w(),
             package_w: rectifier::package_loss_w(site, raw, high).ok()?,
-            pass_w: stages.iter().map(|stage| stage.loss_w(high).ok()).collect::<Option<_>>()?,
+            pass_w: stages
+                .iter()
+                .map(|stage| stage.loss_w(high).ok())
+                .collect::<Option<_>>()?,
             alone_w,
             va: transformer::section_va(raw.hookup, raw.path, rms_a),
+            alone_holds,
         })
     }
 }

@@ -30,7 +30,9 @@ impl<'a, 'c> Walk<'a, 'c> {
     pub(super) fn push_devices(&mut self, section: usize, choice: Choice) {
         let open = &self.sections[section];
         let picked = choice.places().enumerate();
-        let cost: i64 = picked.map(|(rail, place)| self.device_cost(self.stage(rail, open.devices[rail][place]))).sum();
+        let cost: i64 = picked
+            .map(|(rail, place)| self.device_cost(self.stage(rail, open.devices[rail][place])))
+            .sum();
         let score = self.weights.score(open.cost + cost, open.heat);
         self.heap.push(Reverse((Score(score), Entry::Devices(section, choice))));
     }
@@ -55,13 +57,15 @@ impl<'a, 'c> Walk<'a, 'c> {
             .collect();
         let mut stack = None;
         // In the order of the audit's sum.
-        let load_a = stages.iter().try_fold(0.0, |sum, stage| Ok::<f64, &str>(sum + stage.load_a()?));
+        let load_a = stages
+            .iter()
+            .try_fold(0.0, |sum, stage| Ok::<f64, &str>(sum + stage.load_a()?));
         if let Ok(load_a) = load_a {
             // Devices with equal loads share their steady states.
             #[allow(clippy::float_cmp)]
             let known = solved.iter().position(|s| s.load_a == load_a);
             let at = known.unwrap_or_else(|| {
-                solved.push(Solved::new(load_a, self.others_va));
+                solved.push(Solved::new(load_a));
                 solved.len() - 1
             });
             if let Some(losses) = solved[at].losses(self.site, &raw, &stages, counts) {

@@ -97,7 +97,6 @@ pub struct Walk<'a, 'c> {
     source: &'a Source<'c>,
     /// Whether secondaries, rectifier and its sink stand on this outlet.
     holds: bool,
-    others_va: f64,
     weights: Weights,
     apart: Option<Apart>,
     pairs: Vec<Pair>,
@@ -125,7 +124,6 @@ impl<'a, 'c> Walk<'a, 'c> {
             group,
             source,
             holds: !outlet.hookup.secondaries.is_empty(),
-            others_va: outlet.others_va,
             weights,
             apart,
             pairs: Vec::new(),
@@ -147,7 +145,10 @@ impl<'a, 'c> Walk<'a, 'c> {
                 || !fits
                 || !site.holds(rectifier::reverse_voltage(site, rectifier, source.path, source.idle_v))
                 || !site.holds(whole::stock(site.supply, &rectifier.part, pieces))
-                || walk.apart.as_ref().is_some_and(|a| a.rectifier(rectifier, walk.pieces(rectifier)) > a.most)
+                || walk
+                    .apart
+                    .as_ref()
+                    .is_some_and(|a| a.rectifier(rectifier, walk.pieces(rectifier)) > a.most)
             {
                 continue;
             }
@@ -238,8 +239,8 @@ impl<'a, 'c> Walk<'a, 'c> {
         let pair = &self.pairs[place];
         let rectifier = group.shelf.rectifiers[pair.rectifier];
         let load_a = source.load_a;
-        let bare = |corner, others_va| bare_circuit(site, source, Some(rectifier), corner, load_a, others_va);
-        let (Ok(low), Ok(high)) = (bare(Corner::Low, self.others_va), bare(Corner::High, 0.0)) else {
+        let bare = |corner| bare_circuit(site, source, Some(rectifier), corner, load_a, 0.0);
+        let (Ok(low), Ok(high)) = (bare(Corner::Low), bare(Corner::High)) else {
             return;
         };
         // The kindest devices of each rail: least load, lowest level.
@@ -253,7 +254,10 @@ impl<'a, 'c> Walk<'a, 'c> {
                 least_bank_f(&low, level_v, floor_v, site.supply.rails[rail].dip_s.unwrap_or(0.0))
             })
             .fold(0.0, f64::max);
-        let changed = self.apart.as_ref().map(|a| (a, a.rectifier(rectifier, self.pieces(rectifier))));
+        let changed = self
+            .apart
+            .as_ref()
+            .map(|a| (a, a.rectifier(rectifier, self.pieces(rectifier))));
         let banks_that_do: Vec<(usize, i64)> = (group.banks.iter().copied())
             .filter(|&(b, _)| {
                 let bank = group.shelf.banks[b];
@@ -314,7 +318,7 @@ impl<'a, 'c> Walk<'a, 'c> {
         if !self.site.holds(rectifier::surge(self.site, &raw)) {
             return;
         }
-        let mut solved = Solved::new(self.source.load_a, self.others_va);
+        let mut solved = Solved::new(self.source.load_a);
         let Some(devices) = self.hopeful(&raw, &mut solved, counts) else {
             return;
         };

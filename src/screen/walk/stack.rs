@@ -15,7 +15,9 @@ impl<'c> Walk<'_, 'c> {
         let Stack { feed, sinks } = &self.stacks[stack];
         let picked = choice.places().zip(sinks).map(|(place, sinks)| sinks[place]);
         let cost: Money = picked.map(|sink| self.sink_cost(sink)).sum();
-        let score = self.weights.score((feed.floor_cost + cost).0, heat_floor(feed.heat_w()));
+        let score = self
+            .weights
+            .score((feed.floor_cost + cost).0, heat_floor(feed.heat_w()));
         self.heap.push(Reverse((Score(score), Entry::Stack(stack, choice))));
     }
 
@@ -38,10 +40,16 @@ impl<'c> Walk<'_, 'c> {
         }
         let sinks = || std::iter::once(feed.rectifier_sink).chain(feed.devices.iter().map(|d| d.1));
         let cost: Money = sinks().map(|sink| self.sink_cost(sink)).sum();
-        let must = self.group.shelf.must_sinks.iter().zip(&feed.devices).all(|(must, (_, own))| {
-            let has = |sink: &Option<&Sink>, id| sink.is_some_and(|s| s.part.id == id);
-            must.iter().all(|&id| has(&feed.rectifier_sink, id) || has(own, id))
-        });
+        let must = self
+            .group
+            .shelf
+            .must_sinks
+            .iter()
+            .zip(&feed.devices)
+            .all(|(must, (_, own))| {
+                let has = |sink: &Option<&Sink>, id| sink.is_some_and(|s| s.part.id == id);
+                must.iter().all(|&id| has(&feed.rectifier_sink, id) || has(own, id))
+            });
         if let Some(apart) = &self.apart {
             let own = feed.devices.iter().enumerate();
             feed.changes += apart.rectifier_sink(feed.rectifier_sink)
@@ -66,7 +74,8 @@ impl<'c> Walk<'_, 'c> {
         let mut sinks = if self.holds {
             let module = rectifier.kind == RectifierKind::Bridge;
             vec![self.sinks_that(rectifier.case.as_deref().filter(|_| module), |sink| {
-                self.site.holds(rectifier::junction(self.site, rectifier, Ok(losses.package_w), sink))
+                self.site
+                    .holds(rectifier::junction(self.site, rectifier, Ok(losses.package_w), sink))
             })]
         } else {
             vec![vec![None]]
@@ -85,7 +94,10 @@ impl<'c> Walk<'_, 'c> {
         let devices: i64 = stages.iter().map(|stage| self.device_cost(stage)).sum();
         let cost = self.rectifier_cost(rectifier) + devices;
         let changes = self.apart.as_ref().map_or(0, |apart| {
-            let own = stages.iter().enumerate().map(|(rail, stage)| apart.device(rail, stage.device));
+            let own = stages
+                .iter()
+                .enumerate()
+                .map(|(rail, stage)| apart.device(rail, stage.device));
             apart.rectifier(rectifier, pieces) + apart.bank(bank) + own.sum::<usize>()
         });
         if self.apart.as_ref().is_some_and(|apart| changes > apart.most) {
@@ -102,6 +114,7 @@ impl<'c> Walk<'_, 'c> {
                 section_w: losses.section_w,
                 pass_w: losses.pass_w.clone(),
                 va: losses.va,
+                holds_alone: losses.alone_holds,
                 floor_cost: Money(cost) + self.group.prices.cost(&bank.can.part, u64::from(bank.cans)),
                 changes,
             },
