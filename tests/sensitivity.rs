@@ -631,7 +631,7 @@ named rail.section = A -> refused
 const COMMON: [(&str, &str); 5] = [("T1", "T2"), ("B1", "B2"), ("C1", "C2"), ("F1", "F2"), ("S1", "S3")];
 
 /// Columns, supply keys and what they wait for: nothing may hang on them yet. When one of these features comes, the row
-/// here fails and belongs above. (`devices` and `paths` above likewise take no discrete kind, shunt or dual yet.)
+/// here fails and belongs above. (`devices` and `paths` above likewise take no discrete kind or shunt yet.)
 const NOT_YET: &[(&str, &str, &str, &str)] = &[
     ("fixed", "F1.vbe_v", "0.9", "discrete devices"),
     ("fixed", "F1.hfe_min", "25", "discrete devices"),
@@ -803,13 +803,6 @@ fn nothing_hangs_on_what_is_not_yet_offered() {
     // Nor does the search share anything but prices yet, where sharing would be cheaper.
     let picked = "T1x2 B1x2 C1x3 F1x2 S1x2 S2 single bridge [1] single bridge [1]";
     assert_eq!(base("pair").answers()["pick"], Item::Text(picked.into()));
-    // Two rails that name one section are told so.
-    let case = base("pair").changed("rail.section", "X").changed("rail2.section", "X");
-    let faults = from_json(&case.supply, "sensitivity.rs").unwrap_err();
-    assert!(
-        faults.iter().all(|f| f.problem.contains("is not yet offered")),
-        "{faults:?}"
-    );
 }
 
 /// A section has one polarity: its rails see the same raw voltage.
