@@ -1,7 +1,7 @@
 //! Owns the cautions: what no limit can settle and a person must know.
 
 use crate::build::Build;
-use crate::catalogue::{DeviceKind, Part, Polarity, RectifierKind, Status};
+use crate::catalogue::{DeviceKind, Part, Polarity, Status};
 use crate::physics::constants::HIGH_FREQUENCY_HZ;
 use crate::supply::{Path, Supply};
 use crate::units::RunCost;
@@ -21,12 +21,6 @@ pub fn cautions(supply: &Supply, build: &Build) -> Vec<String> {
     if supply.ambient.inside_rise_k <= 0.0 {
         found.push(
             "inside_rise is 0: the air inside a closed box is warmer than outside; measure or estimate it.".into(),
-        );
-    }
-    if supply.rails.len() > 1 && build.transformers.len() == supply.rails.len() && !supply.share_never {
-        found.push(
-            "Every rail has its own section and transformer here: this version does not look for shared ones, which may be cheaper."
-                .into(),
         );
     }
     for instance in &build.transformers {
@@ -51,15 +45,23 @@ pub fn cautions(supply: &Supply, build: &Build) -> Vec<String> {
                 section.id
             ));
         }
-        if section.rectifier.kind == RectifierKind::Diode && section.path == Path::CentreTap {
+        if matches!(section.path, Path::CentreTap | Path::Dual) && !section.is_negative_half() {
             found.push(format!(
-                "section {}: centre-tap halves must be wound alike, or the core takes direct current.",
-                section.id
+                "section {}: {} halves must be wound alike, or the core takes direct current.",
+                section.id,
+                section.path.word()
             ));
         }
     }
     for (rail, choice) in supply.rails.iter().zip(&build.rails) {
         let name = &choice.pass.part.name;
+        let transformer = build.sections[choice.section].transformer;
+        if rail.isolated && build.sections.iter().filter(|s| s.transformer == transformer).count() > 1 {
+            found.push(format!(
+                "rail {}: is isolated from rails on the same transformer by the insulation between its secondaries alone; ask its maker what that holds.",
+                rail.name
+            ));
+        }
         if choice.pass.vdiff_max_v.is_some() {
             found.push(format!(
                 "rail {}: {name} is rated by input to output voltage; a shorted output puts the whole raw voltage across it.",

@@ -168,6 +168,16 @@ impl Check {
         }
     }
 
+    /// The tighter of two; of equally tight ones this.
+    #[must_use]
+    pub fn or_tighter(self, other: Check) -> Check {
+        if other.tightness() < self.tightness() {
+            other
+        } else {
+            self
+        }
+    }
+
     /// Margin as a share of the bound: how tightest and nearest are measured.
     #[must_use]
     pub fn tightness(&self) -> f64 {

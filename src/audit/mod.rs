@@ -10,6 +10,7 @@ pub mod pass;
 pub mod rectifier;
 pub mod reservoir;
 mod site;
+mod source;
 mod thermal;
 pub mod transformer;
 pub mod whole;
@@ -126,19 +127,13 @@ pub fn audit(supply: &Supply, build: &Build) -> Audit {
         transformer::by_itself(&site, instance.part)
             .into_iter()
             .for_each(&mut to);
-        let mut va: Option<Known<f64>> = Some(Ok(0.0));
-        for (section, waves) in build
-            .sections
-            .iter()
-            .zip(&waves_of)
-            .filter(|(s, _)| s.transformer == place)
-        {
-            let raw = raw_of(build, section);
-            va = va.zip(waves.ok()).map(|(sum, waves)| {
-                let rms_a = waves.high?.source_rms_a();
-                Ok(sum? + transformer::section_va(raw.hookup, raw.path, rms_a))
+        // Not to be evaluated where one of its sections collapses.
+        let va = (build.sections.iter().enumerate())
+            .filter(|(_, s)| s.transformer == place)
+            .try_fold(Ok(0.0), |sum: Known<f64>, (k, _)| {
+                let va = source::section_va(build, &waves_of, k)?;
+                Some(sum.and_then(|sum| Ok(sum + va?)))
             });
-        }
         if let Some(va) = va {
             to(transformer::load(instance.part, va));
         }
@@ -155,7 +150,7 @@ pub fn audit(supply: &Supply, build: &Build) -> Audit {
         });
     }
 
-    for (section, waves) in build.sections.iter().zip(&waves_of) {
+    for (place, section) in build.sections.iter().enumerate() {
         let raw = raw_of(build, section);
         let mut to = |check| {
             margins.push(Margin {
@@ -164,7 +159,7 @@ pub fn audit(supply: &Supply, build: &Build) -> Audit {
             })
         };
         let load_a = load_of(section);
-        let waves = match waves {
+        let waves = match &waves_of[place] {
             Ok(waves) => waves,
             Err(corner) => {
                 to(Check::collapse(*corner));
@@ -173,24 +168,7 @@ pub fn audit(supply: &Supply, build: &Build) -> Audit {
         };
         let high = by_ref(&waves.high);
         let idle_v = site.idle_v(raw.transformer, raw.hookup);
-        to(transformer::current(
-            raw.hookup,
-            raw.path,
-            high.map(Waveform::source_rms_a),
-        ));
-        transformer::bias(raw.transformer, raw.hookup, raw.path, load_a)
-            .into_iter()
-            .for_each(&mut to);
-        to(rectifier::reverse_voltage(&site, raw.rectifier, raw.path, idle_v));
-        to(rectifier::current(&raw, high));
-        to(rectifier::surge(&site, &raw));
-        let package_w = rectifier::package_loss_w(&site, &raw, high);
-        to(rectifier::junction(
-            &site,
-            raw.rectifier,
-            package_w,
-            section.rectifier_sink,
-        ));
+        source::limits(&site, build, &waves_of, place, load_a, &mut to);
         to(reservoir::voltage(&site, raw.reservoir, idle_v));
         reservoir::wear(&site, raw.reservoir, raw.path, reservoir::ripple_a(&raw, high))
             .into_iter()
@@ -251,9 +229,7 @@ pub fn audit(supply: &Supply, build: &Build) -> Audit {
             });
             let wave = known(raw.wave(&site, Corner::Alone, alone_a, Ok(&[])));
             let alone = stage.junction(&site, Corner::Alone, stage.loss_w(by_ref(&wave)), choice.sink);
-            if alone.tightness() < junction.tightness() {
-                junction = alone;
-            }
+            junction = junction.or_tighter(alone);
         }
         to(junction);
         stage.ripple(low, high, worn).into_iter().for_each(&mut to);
@@ -285,7 +261,7 @@ pub fn audit(supply: &Supply, build: &Build) -> Audit {
         })
     };
     let heights = build.uses().filter_map(|(part, _)| whole::height(supply, part));
-    if let Some(tallest) = heights.reduce(|a, b| if b.tightness() < a.tightness() { b } else { a }) {
+    if let Some(tallest) = heights.reduce(Check::or_tighter) {
         whole("supply", tallest);
     }
     whole::cost(supply, cost).into_iter().for_each(|c| whole("supply", c));

@@ -48,6 +48,12 @@ pub fn current(raw: &Raw, high: Known<&Waveform>) -> Check {
     )
 }
 
+/// The same of a dual pair: its larger polarity; `raw` of either section.
+#[must_use]
+pub fn pair_current(raw: &Raw, positive: Known<&Waveform>, negative: Known<&Waveform>) -> Check {
+    current(raw, positive).or_tighter(current(raw, negative))
+}
+
 /// Switch-on at the mains crest into the empty reservoir; does not hang on the load.
 #[must_use]
 pub fn surge(site: &Site, raw: &Raw) -> Check {
@@ -64,6 +70,12 @@ pub fn surge(site: &Site, raw: &Raw) -> Check {
         value,
         raw.rectifier.ifsm_a.ok_or("ifsm_a"),
     )
+}
+
+/// The same of a dual pair: the worse of both banks.
+#[must_use]
+pub fn pair_surge(site: &Site, positive: &Raw, negative: &Raw) -> Check {
+    surge(site, positive).or_tighter(surge(site, negative))
 }
 
 /// Loss of all diodes of the section at high mains.
@@ -85,6 +97,21 @@ pub fn package_loss_w(site: &Site, raw: &Raw, high: Known<&Waveform>) -> Known<f
     Ok(match raw.rectifier.kind {
         RectifierKind::Bridge => all,
         RectifierKind::Diode => all / diodes_in_path(raw.path) * diode_share(raw),
+    })
+}
+
+/// The same of a dual pair: both polarities heat a module, a single diode serves one of them; `raw` of either section.
+///
+/// # Errors
+/// Names the column that is blank.
+pub fn pair_package_w(site: &Site, raw: &Raw, positive: Known<&Waveform>, negative: Known<&Waveform>) -> Known<f64> {
+    let (positive_w, negative_w) = (
+        package_loss_w(site, raw, positive)?,
+        package_loss_w(site, raw, negative)?,
+    );
+    Ok(match raw.rectifier.kind {
+        RectifierKind::Bridge => positive_w + negative_w,
+        RectifierKind::Diode => positive_w.max(negative_w),
     })
 }
 

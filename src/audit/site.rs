@@ -234,7 +234,12 @@ impl Raw<'_> {
         let (threshold_v, slope_ohm) = site.forward(self.rectifier, corner)?;
         let esr_ohm = site.can_esr_ohm(self.reservoir, corner)?;
         let load_a = load_a?;
-        let winding_ohm = site.winding_ohm(self.transformer, self.hookup, corner, load_a, all?);
+        // A blank cell of another section matters only where its load does.
+        let all = match corner {
+            Corner::Low | Corner::Nominal => all?,
+            _ => &[],
+        };
+        let winding_ohm = site.winding_ohm(self.transformer, self.hookup, corner, load_a, all);
         Ok(RawSection {
             source_rms_v: site.source_v(self.transformer, self.hookup, corner),
             mains_hz: site.supply.mains.frequency_hz,

@@ -31,20 +31,42 @@ pub fn by_itself(site: &Site, transformer: &Transformer) -> [Check; 3] {
     ]
 }
 
-/// Rms current in the hook-up's windings (in one half for centre-tap).
+/// Rms current in the hook-up's windings (in one half for centre-tap and dual; for dual the part of one polarity alone,
+/// see [`pair_rms_a`]).
 #[must_use]
 pub fn winding_rms_a(path: Path, source_rms_a: f64) -> f64 {
     match path {
-        Path::CentreTap => source_rms_a / SQRT_2,
-        Path::HalfWave | Path::Bridge | Path::Dual => source_rms_a,
+        Path::CentreTap | Path::Dual => source_rms_a / SQRT_2,
+        Path::HalfWave | Path::Bridge => source_rms_a,
     }
 }
 
-/// Apparent power of a hook-up, to be summed over the transformer.
+/// Rms current in one half of a dual pair's winding: each half serves the polarities by turns, half a period each.
+/// Never less than [`winding_rms_a`] of one polarity alone.
+#[must_use]
+pub fn pair_rms_a(positive_rms_a: f64, negative_rms_a: f64) -> f64 {
+    winding_rms_a(Path::Dual, positive_rms_a).hypot(winding_rms_a(Path::Dual, negative_rms_a))
+}
+
+/// Apparent power of a hook-up, to be summed over the transformer; of one polarity of a dual pair it is a lower bound of
+/// [`pair_va`].
 #[must_use]
 pub fn section_va(hookup: &Hookup, path: Path, source_rms_a: f64) -> f64 {
-    let halves = if hookup.kind == HookupKind::CentreTap { 2.0 } else { 1.0 };
-    halves * hookup.volts_v * winding_rms_a(path, source_rms_a)
+    windings_va(hookup, winding_rms_a(path, source_rms_a))
+}
+
+/// The same of both sections of a dual pair together; `hookup` of either.
+#[must_use]
+pub fn pair_va(hookup: &Hookup, positive_rms_a: f64, negative_rms_a: f64) -> f64 {
+    windings_va(hookup, pair_rms_a(positive_rms_a, negative_rms_a))
+}
+
+fn windings_va(hookup: &Hookup, rms_a: f64) -> f64 {
+    let halves = match hookup.kind {
+        HookupKind::CentreTap | HookupKind::Dual => 2.0,
+        HookupKind::Single | HookupKind::Series | HookupKind::Parallel => 1.0,
+    };
+    halves * hookup.volts_v * rms_a
 }
 
 /// The sum of [`section_va`] against the rating.
@@ -56,7 +78,17 @@ pub fn load(transformer: &Transformer, va: Known<f64>) -> Check {
 /// Winding current; `source_rms_a` is that of the high corner.
 #[must_use]
 pub fn current(hookup: &Hookup, path: Path, source_rms_a: Known<f64>) -> Check {
-    let rms_a = source_rms_a.map(|a| winding_rms_a(path, a));
+    windings_current(hookup, source_rms_a.map(|a| winding_rms_a(path, a)))
+}
+
+/// The same in a half of a dual pair's winding; `hookup` of either section.
+#[must_use]
+pub fn pair_current(hookup: &Hookup, positive_rms_a: Known<f64>, negative_rms_a: Known<f64>) -> Check {
+    let rms_a = positive_rms_a.and_then(|a| Ok(pair_rms_a(a, negative_rms_a?)));
+    windings_current(hookup, rms_a)
+}
+
+fn windings_current(hookup: &Hookup, rms_a: Known<f64>) -> Check {
     Check::new(Limit::WindingCurrent, Corner::High, rms_a, Ok(hookup.amps_a))
 }
 

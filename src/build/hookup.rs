@@ -76,6 +76,15 @@ impl Hookup {
         (!places.is_empty() && places.iter().all(there)).then(|| Hookup::new(kind, places, transformer))
     }
 
+    /// What the negative half of a dual pair holds when the positive one is hooked up like this.
+    #[must_use]
+    pub fn negative_half(&self) -> Hookup {
+        Hookup {
+            secondaries: Vec::new(),
+            ..self.clone()
+        }
+    }
+
     /// Whether it joins secondaries of the same ratings and kind as `other` does, all of them equal.
     pub(super) fn is_like(&self, other: &Hookup, transformer: &Transformer) -> bool {
         let at = |place: &usize| &transformer.secondaries[place - 1];

@@ -4,6 +4,7 @@
 
 mod distance;
 mod hookup;
+mod misfits;
 mod rules;
 mod sharing;
 
@@ -11,7 +12,8 @@ use std::collections::BTreeMap;
 
 pub use distance::{Change, Place, changes, distance, places, wiring};
 pub use hookup::{Hookup, HookupKind, Windings, hookups, windings};
-pub use rules::{Misfit, device_serves, diodes_in_path, misfits, pieces_of_rectifier, sink_takes};
+pub use misfits::{Misfit, misfits};
+pub use rules::{device_serves, diodes_in_path, pieces_of_rectifier, sink_takes};
 pub use sharing::{may_pair, may_share};
 
 use crate::catalogue::{Part, PartId, PassDevice, Rectifier, Reservoir, Sink, Transformer};
@@ -95,14 +97,27 @@ impl Line<'_> {
 }
 
 impl Section<'_> {
+    /// Whether it is the half of a dual pair that holds nothing of what both share.
+    #[must_use]
+    pub fn is_negative_half(&self) -> bool {
+        self.hookup.secondaries.is_empty()
+    }
+
     /// Pieces of its rectifier; 0 on the negative half of a dual pair.
     #[must_use]
     pub fn rectifier_pieces(&self) -> u64 {
-        if self.hookup.secondaries.is_empty() {
+        if self.is_negative_half() {
             0
         } else {
             pieces_of_rectifier(self.rectifier.kind, self.path)
         }
+    }
+
+    /// Whether nothing ties it to another rail, so that a positive device can serve a negative rail: it feeds that rail
+    /// alone, and is no half of a dual pair, whose centre is common to both.
+    #[must_use]
+    pub fn floats(&self) -> bool {
+        self.rails.len() == 1 && self.path != Path::Dual
     }
 }
 

@@ -6,6 +6,7 @@ pub mod none;
 pub mod schema;
 pub mod table;
 mod text;
+mod wiring;
 
 use crate::audit::{Audit, Margin, audit, cautions};
 use crate::build::{Build, Line};

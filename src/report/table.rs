@@ -7,8 +7,8 @@ use super::Report;
 use super::json::{unit_of, wave_figures};
 use super::none::NoBuild;
 use super::text::{digits, engineering, printable};
+use super::wiring::wiring;
 use crate::build::Line;
-use crate::catalogue::{Part, Sink};
 use crate::fault::Fault;
 use crate::physics::raw_section::Waveform;
 use crate::screen::Objective;
@@ -33,7 +33,7 @@ pub fn left(line: &Line, builds: u64) -> Option<u64> {
 pub fn build(report: &Report, page: Page) -> String {
     let mut out = String::new();
     out.push_str(&verdict(report, page));
-    out.push_str(&wiring(report));
+    out.push_str(&wiring(report, page));
     out.push_str(&format!("\nBill of materials, run of {}\n", report.supply.builds));
     out.push_str(&bill(report, page));
     out + &evidence(report, page)
@@ -245,39 +245,6 @@ fn verdict(report: &Report, page: Page) -> String {
     out
 }
 
-/// Which part sits where, a paragraph for each rail.
-fn wiring(report: &Report) -> String {
-    let name = |part: &Part| printable(&part.name);
-    let on = |sink: Option<&Sink>| sink.map_or(String::new(), |s| format!(" on sink {}", printable(&s.part.name)));
-    let mut out = String::new();
-    for (rail, choice) in report.supply.rails.iter().zip(&report.build.rails) {
-        let section = &report.build.sections[choice.section];
-        let transformer = &report.build.transformers[section.transformer];
-        let places: Vec<String> = section.hookup.secondaries.iter().map(ToString::to_string).collect();
-        let pieces = crate::build::pieces_of_rectifier(section.rectifier.kind, section.path);
-        out.push_str(&format!(
-            "{}: {} {}\n  {} {}, secondary {} {}\n  {}: {} {} x {}{}, {} x {}\n  {}{}\n",
-            printable(&rail.name),
-            engineering(rail.voltage_v, "V"),
-            engineering(rail.current_a, "A"),
-            transformer.id,
-            name(&transformer.part.part),
-            places.join("+"),
-            section.hookup.kind.word(),
-            section.id,
-            section.path.word(),
-            pieces,
-            name(&section.rectifier.part),
-            on(section.rectifier_sink),
-            section.cans,
-            name(&section.reservoir.part),
-            name(&choice.pass.part),
-            on(choice.sink),
-        ));
-    }
-    out
-}
-
 fn bill(report: &Report, page: Page) -> String {
     let mut header = vec!["Part", "Per unit", "Run", "Shelf", "Left", "Each", "Run cost"];
     let described = page.width.is_none_or(|width| width >= DESCRIBED);
@@ -409,7 +376,7 @@ fn set(table: &Table) -> String {
 }
 
 /// Words broken at the page's width, later lines indented.
-fn wrapped(text: &str, first: &str, later: &str, width: Option<u16>) -> String {
+pub(super) fn wrapped(text: &str, first: &str, later: &str, width: Option<u16>) -> String {
     let most = width.map_or(usize::MAX, usize::from).max(20);
     let mut out = String::new();
     let mut line = first.to_owned();

@@ -55,8 +55,14 @@ pub(super) fn resolve<'c>(
         if named.rails.is_empty() {
             to.say(&column, "", "feeds no rail", "name one");
         }
-        let instance = transformer.and_then(|place| transformers[place].as_ref());
-        sections.push(to.section(named, &column, transformer, instance, rails));
+        let place = Placed {
+            column: &column,
+            transformer,
+            instance: transformer.and_then(|place| transformers[place].as_ref()),
+            pair: to.pair(document, named, &column),
+            rails,
+        };
+        sections.push(to.section(document, named, place));
     }
     let mut rails: Vec<Option<RailChoice<'c>>> = vec![None; supply.rails.len()];
     for named in &document.rails {
@@ -125,6 +131,15 @@ pub(super) fn resolve<'c>(
     }
 }
 
+/// Where a section stands: what its document's other parts have told of it.
+struct Placed<'a, 'c> {
+    column: &'a str,
+    transformer: Option<usize>,
+    instance: Option<&'a Instance<'c>>,
+    pair: Option<usize>,
+    rails: Vec<usize>,
+}
+
 struct Resolver<'c, 'a> {
     catalogue: &'c Catalogue,
     file: &'a str,
@@ -162,15 +177,66 @@ impl<'c> Resolver<'c, '_> {
         self.find(name, Slot::Sink, &catalogue.sinks, |s| &s.part)
     }
 
-    fn section(
+    /// Place of the section that is named as the other half of a dual pair.
+    fn pair(&mut self, document: &Document, named: &Named, column: &str) -> Option<usize> {
+        let pair = named.pair.as_ref()?;
+        let place = document.sections.iter().position(|s| &s.id == pair);
+        if place.is_none() {
+            self.say(
+                &format!("{column}.pair"),
+                pair,
+                "is no section of this build",
+                "name the other half of the dual pair, or null",
+            );
+        }
+        place
+    }
+
+    /// The hook-up that a section names; the negative half of a dual pair has that of the positive one.
+    fn hookup(
         &mut self,
+        document: &Document,
         named: &Named,
-        column: &str,
-        transformer: Option<usize>,
-        instance: Option<&Instance<'c>>,
-        rails: Vec<usize>,
-    ) -> Option<Section<'c>> {
-        let catalogue = self.catalogue;
+        place: &Placed<'_, 'c>,
+        kind: HookupKind,
+    ) -> Option<Hookup> {
+        let instance = place.instance?;
+        let half = kind == HookupKind::Dual && named.secondaries.is_empty();
+        // A pair that leads nowhere is told already.
+        if half && named.pair.is_some() && place.pair.is_none() {
+            return None;
+        }
+        let holder = match place.pair {
+            Some(pair) if half => &document.sections[pair],
+            _ => named,
+        };
+        let places: Vec<usize> = (holder.secondaries.iter())
+            .filter_map(|&p| usize::try_from(p).ok())
+            .collect();
+        let hookup = Hookup::of_places(kind, &places, instance.part);
+        match hookup {
+            Some(_) => {}
+            None if half => self.say(
+                place.column,
+                "",
+                "has no secondaries, nor has a pair of it on this transformer",
+                "the negative half of a dual pair names the positive one, which holds two",
+            ),
+            None => {
+                let there = instance.part.secondaries.len();
+                self.say(
+                    place.column,
+                    &format!("{places:?}"),
+                    "are not its secondaries",
+                    &format!("places 1 to {there}"),
+                );
+            }
+        }
+        hookup.map(|hookup| if half { hookup.negative_half() } else { hookup })
+    }
+
+    fn section(&mut self, document: &Document, named: &Named, place: Placed<'_, 'c>) -> Option<Section<'c>> {
+        let (catalogue, column) = (self.catalogue, place.column);
         let kind = word(&named.hookup, &HookupKind::ALL, |k| k.word());
         if kind.is_none() {
             self.say(
@@ -200,15 +266,25 @@ impl<'c> Resolver<'c, '_> {
                 "make both agree or leave it out",
             );
         }
-        if let (Some(qty), Some(rectifier), Some(path)) = (named.rectifier_qty, rectifier, path)
-            && qty != pieces_of_rectifier(rectifier.kind, path)
-        {
-            self.say(
-                column,
-                &qty.to_string(),
-                "rectifier_qty is not what the path takes",
-                "correct it or leave it out",
-            );
+        if let (Some(qty), Some(rectifier), Some(path)) = (named.rectifier_qty, rectifier, path) {
+            let half = path == Path::Dual && named.secondaries.is_empty();
+            let pieces = if half {
+                0
+            } else {
+                pieces_of_rectifier(rectifier.kind, path)
+            };
+            if qty != pieces {
+                self.say(
+                    &format!("{column}.rectifier_qty"),
+                    &qty.to_string(),
+                    if half {
+                        "is counted on the positive half of the pair"
+                    } else {
+                        "is not what the path takes"
+                    },
+                    &format!("{pieces}, or leave it out"),
+                );
+            }
         }
         let cans = u32::try_from(named.reservoir_qty).ok();
         if cans.is_none() {
@@ -219,35 +295,18 @@ impl<'c> Resolver<'c, '_> {
                 "1 to the cap on cans",
             );
         }
-        let places: Vec<usize> = named
-            .secondaries
-            .iter()
-            .filter_map(|&p| usize::try_from(p).ok())
-            .collect();
-        let hookup = instance.zip(kind).and_then(|(instance, kind)| {
-            let hookup = Hookup::of_places(kind, &places, instance.part);
-            if hookup.is_none() {
-                let there = instance.part.secondaries.len();
-                self.say(
-                    column,
-                    &format!("{places:?}"),
-                    "are not its secondaries",
-                    &format!("places 1 to {there}"),
-                );
-            }
-            hookup
-        });
+        let hookup = kind.and_then(|kind| self.hookup(document, named, &place, kind));
         Some(Section {
             id: named.id.clone(),
-            transformer: transformer?,
+            transformer: place.transformer?,
             hookup: hookup?,
             path: path?,
-            pair: None,
+            pair: place.pair,
             rectifier: rectifier?,
             rectifier_sink: rectifier_sink.flatten(),
             reservoir: reservoir?,
             cans: cans?,
-            rails,
+            rails: place.rails,
         })
     }
 }

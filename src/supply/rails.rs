@@ -131,23 +131,12 @@ fn sections(r: &mut Reader<'_>, tables: &[Table<'_>], rails: &[Rail], share_neve
 /// What the file format has and this version's search does not: told, never ignored. Each goes when the search can do it.
 fn not_yet_offered(r: &mut Reader<'_>, tables: &[Table<'_>], rails: &[Rail]) {
     const NOT_YET: &str = "is not yet offered by this version";
-    for (first, k) in sharing(rails) {
-        let wrong = Wrong::new(
-            format!("shared with rail {} {NOT_YET}", rails[first].name),
-            "give each rail its own section, or name none",
-        );
-        r.fault(&tables[k], "section", wrong);
-    }
     for (table, rail) in tables.iter().zip(rails) {
         for kind in &rail.devices {
             if !matches!(kind, DeviceKind::Fixed | DeviceKind::Adjustable) {
                 let wrong = Wrong::new(format!("{} {NOT_YET}", kind.word()), "write fixed, adjustable, or both");
                 r.fault(table, "devices", wrong);
             }
-        }
-        if table.get("paths").is_some() && rail.paths.contains(&Path::Dual) {
-            let wrong = Wrong::new(format!("dual {NOT_YET}"), "write half-wave, centre-tap or bridge");
-            r.fault(table, "paths", wrong);
         }
     }
 }

@@ -177,7 +177,10 @@ pub fn singles<'c>(supply: &Supply, catalogue: &'c Catalogue) -> (Vec<Vec<Build<
 fn combinations<'c>(supply: &Supply, catalogue: &'c Catalogue) -> Vec<Build<'c>> {
     let mut found = Vec::new();
     for transformer in &catalogue.transformers {
-        for hookup in own_hookups(transformer) {
+        for hookup in own_hookups(transformer)
+            .into_iter()
+            .filter(|h| h.kind != HookupKind::Dual)
+        {
             for &path in &supply.rails[0].paths {
                 let centre = hookup.kind == HookupKind::CentreTap;
                 if path == Path::Dual || centre != (path == Path::CentreTap) {

@@ -21,7 +21,7 @@ pub fn pieces_in(rectifier: &Rectifier, path: Path) -> u64 {
     }
 }
 
-/// k equal secondaries, the lowest places; the halves of x-0-x only in series, by one or as a centre-tapped pair.
+/// k equal secondaries, the lowest places; the halves of x-0-x only in series, by one, as a centre-tapped pair or dual.
 pub fn own_hookups(transformer: &Transformer) -> Vec<Hookup> {
     let secondaries = &transformer.secondaries;
     let word = |place: usize| {
@@ -39,8 +39,13 @@ pub fn own_hookups(transformer: &Transformer) -> Vec<Hookup> {
         for count in 1..=equal.len() {
             let kinds: &[HookupKind] = match (count, secondaries[first].tapped.is_some()) {
                 (1, _) => &[HookupKind::Single],
-                (2, true) => &[HookupKind::Series, HookupKind::CentreTap],
-                (2, false) => &[HookupKind::Series, HookupKind::Parallel, HookupKind::CentreTap],
+                (2, true) => &[HookupKind::Series, HookupKind::CentreTap, HookupKind::Dual],
+                (2, false) => &[
+                    HookupKind::Series,
+                    HookupKind::Parallel,
+                    HookupKind::CentreTap,
+                    HookupKind::Dual,
+                ],
                 _ => &[HookupKind::Series, HookupKind::Parallel],
             };
             let (volts_v, amps_a, k) = (secondaries[first].volts_v, secondaries[first].amps_a, count as f64);

@@ -1,19 +1,18 @@
 #!/usr/bin/env python3
-"""Three builds worked by hand: every margin, by a second implementation.
+"""Builds worked by hand: every margin, by a second implementation.
 
-This script shares no code with binrail.  It reads nothing but the three builds written out
+This script shares no code with binrail.  It reads nothing but the builds written out
 below, works out every limit that applies and writes them to hand_builds.json, which the Rust
 tests compare with the audit.
 
-    hand_builds.py            print the margins of the three builds
+    hand_builds.py            print the margins of the builds
     hand_builds.py --write    write hand_builds.json beside this file
     hand_builds.py --check    work all out again and compare with hand_builds.json (exit 1 on a difference)
     hand_builds.py --verify   check the solver against other methods and published numbers
 
-Covered: series devices (fixed, adjustable) with every rail on a section of its own and every
-section on a transformer of its own; hook-ups single, series, parallel, centre-tap; paths
-half-wave, centre-tap, bridge.  Not covered: shared sections or transformers, dual, discrete and
-shunt devices, fitted values (the set-point error of an adjustable device is 0).
+Covered: series devices (fixed, adjustable); all hook-ups and paths; sections that feed several
+rails, transformers that feed several sections, dual pairs.  Not covered: discrete and shunt
+devices, fitted values (the set-point error of an adjustable device is 0), sections that collapse.
 
 The periodic steady state is one brentq root for the start of conduction; means and rms values
 are Gauss-Legendre integrals of the waveform, not closed forms.  --verify integrates the same
@@ -171,14 +170,16 @@ class Hookup:
     i: float  # I_k
     s: float  # sum of V_s I_s over all secondaries of the transformer, used or not
     used: list  # rated V of each winding that is used
-    rms_share: float  # winding rms current of the hook-up / rms source current
-    each_share: float  # rms current of one used winding / rms source current
+    rms_share: float  # winding rms current of the hook-up / rms source current; dual: of one polarity's part
+    each_share: float  # rms current of one used winding / rms source current; dual: the same
 
 
-def hook_up(row, section):
+def hook_up(row, section, holder):
+    """`holder` is the section that names the secondaries: itself, or the positive half of a dual pair."""
     all_windings = windings(row)
-    used = [all_windings[place - 1] for place in section["secondaries"]]
-    assert len(used) == section["windings"] and all(w == used[0] for w in used)
+    assert len(section["secondaries"]) == section["windings"]
+    used = [all_windings[place - 1] for place in holder["secondaries"]]
+    assert used and all(w == used[0] for w in used)
     (v, i), k, kind = used[0], len(used), section["hookup"]
     s = sum(volts * amps for volts, amps in all_windings)
     volts = [w[0] for w in used]
@@ -189,7 +190,7 @@ def hook_up(row, section):
         return Hookup(v * k, i, s, volts, 1.0, 1.0)
     if kind == "parallel":
         return Hookup(v, i * k, s, volts, 1.0, 1.0 / k)
-    assert kind == "centre-tap" and k == 2 and section["path"] == "centre-tap"
+    assert kind in ("centre-tap", "dual") and k == 2 and section["path"] == kind
     return Hookup(v, i, s, volts, 1 / math.sqrt(2), 1 / math.sqrt(2))
 
 
@@ -198,11 +199,12 @@ def open_circuit(row, hookup, mains, v_primary):
     return hookup.v * (1 + row.number("regulation_pct")) * mains / v_primary
 
 
-def winding_resistance(row, hookup, celsius):
-    """R_k at a winding temperature; the transformer has one section, so the sum over b is V_k I_Lk."""
+def winding_resistance(row, hookup, celsius, own_load, loads):
+    """R_k at a winding temperature.  `loads`: (V_b, I_Lb) of each section that counts in the sum, this one included."""
     a = row.number("primary_share_pct", 0.50)
     hot = row.number("winding_c", 85.0)
-    r_k = row.number("regulation_pct") * hookup.v * ((1 - a) / hookup.i + a / hookup.s * hookup.v)
+    together = sum(v_b * i_b for v_b, i_b in loads)
+    r_k = row.number("regulation_pct") * hookup.v * ((1 - a) / hookup.i + (a / hookup.s) * together / own_load)
     return r_k * (234.5 + min(celsius, hot)) / (234.5 + hot)
 
 
@@ -210,7 +212,7 @@ def winding_resistance(row, hookup, celsius):
 # Rectifier and reservoir
 # ---------------------------------------------------------------------------------------------
 
-DIODES_IN_PATH = {"bridge": 2, "centre-tap": 1, "half-wave": 1}
+DIODES_IN_PATH = {"bridge": 2, "centre-tap": 1, "half-wave": 1, "dual": 1}  # dual: per polarity
 
 
 def diode_threshold(row, celsius, low):
@@ -369,36 +371,48 @@ def golden_maximum(f, a, b):
 
 
 # ---------------------------------------------------------------------------------------------
-# One section at its corners
+# One section at its corners, and its rails
 # ---------------------------------------------------------------------------------------------
 
 
 class Section:
-    """A section with its one rail and its transformer, ready to be judged."""
+    """A section and its transformer, ready to be judged.  Two steps: its parts, then (all loads known) its corners."""
 
     def __init__(self, build, given, rows, section):
         self.id, self.path, self.given = section["id"], section["path"], given
         self.section = section
         part_of = {t["id"]: t["part"] for t in build["transformers"]}
+        self.transformer_id = section["transformer"]
         self.transformer = rows[part_of[section["transformer"]]]
         self.rectifier = rows[section["rectifier"]]
         self.rectifier_sink = rows[section["rectifier_sink"]] if section["rectifier_sink"] else None
         self.reservoir = rows[section["reservoir"]]
         self.cans = section["reservoir_qty"]
-        (name,) = section["rails"]
-        self.asked = next(r for r in build["supply"]["rail"] if r["name"] == name)
-        chosen = next(r for r in build["rails"] if r["name"] == name)
-        assert chosen["section"] == self.id
-        self.rail, self.device = name, rows[chosen["pass"]]
-        self.sink = rows[chosen["sink"]] if chosen["sink"] else None
-        self.v_out = abs(quantity(self.asked["voltage"]))
-        self.amps = quantity(self.asked["current"])
-        self.load = self.amps + self.device.number("ground_ma")
-        self.hookup = hook_up(self.transformer, section)
+        self.rails = [Rail(build, rows, name, self) for name in section["rails"]]
+        self.load = sum(rail.load for rail in self.rails)  # I_L = sum of (rail current + ground current)
+
+        holder = section
+        self.negative_half = False
+        if self.path == "dual":
+            pair = next(x for x in build["sections"] if x["id"] == section["pair"])
+            assert pair["pair"] == self.id and pair["transformer"] == section["transformer"]
+            assert pair["rectifier"] == section["rectifier"]
+            self.negative_half = self.rails[0].negative
+            if self.negative_half:
+                assert section["secondaries"] == [] and section["windings"] == 0
+                assert section["rectifier_qty"] == 0 and section["rectifier_sink"] is None
+                holder = pair
+        else:
+            assert section["pair"] is None
+        self.hookup = hook_up(self.transformer, section, holder)
         self.v_primary = primary_voltage(self.transformer, given.mains)
         self.n_d = DIODES_IN_PATH[self.path]
         self.r_t = diode_slope(self.rectifier)
 
+    def settle(self, sections):
+        """The corners.  `sections`: all of the build."""
+        given = self.given
+        self.other = next((x for x in sections if x.id == self.section["pair"]), None)
         v_tol = self.transformer.number("v_tol_pct", 0.0)
         self.v_oc_low = (
             open_circuit(self.transformer, self.hookup, given.mains_low * (1 - given.flat_top), self.v_primary) * (1 - v_tol)
@@ -406,9 +420,11 @@ class Section:
         self.v_oc_high = open_circuit(self.transformer, self.hookup, given.mains_high, self.v_primary) * (1 + v_tol)
         self.crest_idle = self.v_oc_high * math.sqrt(2)
         winding_c = self.transformer.number("winding_c", 85.0)
-        self.r_low = winding_resistance(self.transformer, self.hookup, winding_c)
-        self.r_high = winding_resistance(self.transformer, self.hookup, given.t_hi)
-        self.r_cold = winding_resistance(self.transformer, self.hookup, given.t_lo)
+        together = [(x.hookup.v, x.load) for x in sections if x.transformer_id == self.transformer_id]
+        itself = [(self.hookup.v, self.load)]
+        self.r_low = winding_resistance(self.transformer, self.hookup, winding_c, self.load, together)
+        self.r_high = winding_resistance(self.transformer, self.hookup, given.t_hi, self.load, itself)
+        self.r_cold = winding_resistance(self.transformer, self.hookup, given.t_lo, self.load, itself)
 
         # Bank of n equal cans: n C, ESR / n.
         c, esr = self.cans * self.reservoir.number("c_uf"), esr_of_can(self.reservoir) / self.cans
@@ -421,18 +437,119 @@ class Section:
         self.v_t0_high = diode_threshold(self.rectifier, given.t_hi, low=False)
 
         self.at = {
-            "low": self.solve(self.v_oc_low, self.r_low, self.v_t0_low, self.c_low, self.esr_low),
-            "high": self.solve(self.v_oc_high, self.r_high, self.v_t0_high, self.c_high, esr),
-            "worn": self.solve(self.v_oc_high, self.r_high, self.v_t0_high, self.c_low, self.esr_low),
+            "low": steady_state(self.circuit(self.v_oc_low, self.r_low, self.v_t0_low, self.c_low, self.esr_low, self.load)),
+            "high": steady_state(self.circuit(self.v_oc_high, self.r_high, self.v_t0_high, self.c_high, esr, self.load)),
+            "worn": steady_state(self.circuit(self.v_oc_high, self.r_high, self.v_t0_high, self.c_low, self.esr_low, self.load)),
         }
+        for rail in self.rails:
+            rail.alone = steady_state(self.alone_circuit(rail))
 
-    def solve(self, v_oc, r_w, v_t0, c, esr):
-        return steady_state(Circuit(
+    def circuit(self, v_oc, r_w, v_t0, c, esr, load):
+        return Circuit(
             v_pk=v_oc * math.sqrt(2), v_d=self.n_d * v_t0, r=r_w + self.n_d * self.r_t,
-            c=c, esr=esr, load=self.load, hz=self.given.hz, full_wave=self.path != "half-wave",
-        ))
+            c=c, esr=esr, load=load, hz=self.given.hz, full_wave=self.path != "half-wave",
+        )
 
-    # -- pass device ---------------------------------------------------------------------------
+    def alone_circuit(self, rail):
+        """As high; this rail full, the other rails of its section idle, with their full ground current."""
+        load = rail.load + sum(other.idle + other.ground for other in self.rails if other is not rail)
+        return self.circuit(self.v_oc_high, self.r_high, self.v_t0_high, self.c_high, self.esr, load)
+
+    # -- winding, rectifier and reservoir ------------------------------------------------------
+
+    def winding_rms(self):
+        """Hook-up; dual: sqrt((I_rms+^2 + I_rms-^2)/2) per half."""
+        own = self.at["high"].source_rms
+        if self.path == "dual":
+            return math.sqrt((own**2 + self.other.at["high"].source_rms ** 2) / 2)
+        return own * self.hookup.rms_share
+
+    def windings_va(self):
+        """Sum over the windings V_s I_rms; of a dual pair with the positive half."""
+        if self.negative_half:
+            return 0.0
+        if self.path == "dual":
+            return sum(v * self.winding_rms() for v in self.hookup.used)
+        return sum(v * self.at["high"].source_rms * self.hookup.each_share for v in self.hookup.used)
+
+    def polarities(self):
+        """The sections that this rectifier serves."""
+        return [self, self.other] if self.path == "dual" else [self]
+
+    def is_module(self):
+        return self.rectifier.text("kind") == "bridge"
+
+    def path_loss(self):
+        """V_T0 I_avg + r_T I_rms^2 of one diode in the path, at high."""
+        high = self.at["high"]
+        return self.v_t0_high * high.source_mean + self.r_t * high.source_rms**2
+
+    def package_loss(self):
+        """Module: n_d diodes, dual the sum over both polarities; one diode of a half-wave path: all, of a full-wave path: half."""
+        if self.is_module():
+            return sum(s.n_d * s.path_loss() for s in self.polarities())
+        return max(s.path_loss() for s in self.polarities()) * (1.0 if self.path == "half-wave" else 0.5)
+
+    def rectifier_mean(self):
+        """Module: the section's mean current; one diode: all of it in half-wave, half in full-wave paths; dual: the larger polarity."""
+        share = 1.0 if self.is_module() or self.path == "half-wave" else 0.5
+        return max(s.at["high"].source_mean for s in self.polarities()) * share
+
+    def rectifier_allowed(self):
+        share = {"capacitive": 1.0, "resistive": 0.8}[self.rectifier.text("io_for", "resistive")]
+        return share * self.rectifier.number("io_a")
+
+    def surge(self):
+        """V_oc sqrt 2 / (R + n_d r_T + ESR): cold winding, thresholds 0, new capacitor; dual: the worse bank."""
+        return max(s.crest_idle / (s.r_cold + s.n_d * s.r_t + s.esr) for s in self.polarities())
+
+    def peak_inverse(self):
+        return self.crest_idle * (1.0 if self.path == "bridge" else 2.0)
+
+    def rms_per_can(self):
+        return self.at["high"].reservoir_rms / self.cans
+
+    def hot(self):
+        """T_hi + 5 K (rms per can / rating)^2, rating as in reservoir-ripple."""
+        return self.given.t_hi + 5 * (self.rms_per_can() / ripple_rating(self.reservoir, self.path)) ** 2
+
+    def life(self):
+        """life_h 2^((t_max + 5 - hot)/10)."""
+        return self.reservoir.number("life_h") * 2 ** ((self.reservoir.number("t_max_c") + 5 - self.hot()) / 10)
+
+    # -- heat ----------------------------------------------------------------------------------
+
+    def heat(self):
+        """Pass + rectifier + reservoir ESR I^2 + winding copper, at high; the core is counted per transformer."""
+        high = self.at["high"]
+        return (
+            sum(rail.pass_power(high.mean) for rail in self.rails)
+            + self.n_d * self.path_loss()
+            + self.esr * high.reservoir_rms**2
+            + self.r_high * high.source_rms**2
+        )
+
+
+class Rail:
+    """A rail with its device, on its section."""
+
+    def __init__(self, build, rows, name, section):
+        self.name, self.section = name, section
+        self.asked = next(r for r in build["supply"]["rail"] if r["name"] == name)
+        chosen = next(r for r in build["rails"] if r["name"] == name)
+        assert chosen["section"] == section.id
+        self.device = rows[chosen["pass"]]
+        self.sink = rows[chosen["sink"]] if chosen["sink"] else None
+        volts = quantity(self.asked["voltage"])
+        self.negative, self.v_out = volts < 0, abs(volts)
+        self.amps = quantity(self.asked["current"])
+        self.idle = quantity(self.asked.get("idle", "0 A"))
+        self.ground = self.device.number("ground_ma")
+        self.load = self.amps + self.ground
+
+    @property
+    def at(self):
+        return self.section.at
 
     def divider_term(self):
         """2 x 1 % (1 - vref/V_out) of an adjustable device."""
@@ -456,10 +573,20 @@ class Section:
         """V_out (1 + tol) + dropout(I)."""
         return self.v_out * (1 + self.tol()) + self.dropout()
 
-    def pass_power(self):
-        """P = (mean raw - V_out) I + mean raw x ground current, at high."""
-        mean = self.at["high"].mean
-        return (mean - self.v_out) * self.amps + mean * (self.load - self.amps)
+    def pass_power(self, mean):
+        """P = (mean raw - V_out) I + mean raw x ground current."""
+        return (mean - self.v_out) * self.amps + mean * self.ground
+
+    def junction(self, corner, t_hi):
+        mean = {"high": self.at["high"], "alone": self.alone}[corner].mean
+        return t_hi + junction_rise(self.pass_power(mean), self.device, self.sink)
+
+    def junction_corner(self, t_hi):
+        """The worse of high and alone; on a tie the first."""
+        try:
+            return max(("high", "alone"), key=lambda corner: self.junction(corner, t_hi))
+        except Missing:
+            return "high"
 
     def psrr(self):
         """psrr_db, less 20 log10(V_out/psrr_vout) of an adjustable device, less 20 (1 - h) near dropout, not below 0."""
@@ -483,62 +610,8 @@ class Section:
 
     def dip_time(self):
         """The asked dip rounded up to whole half periods; half-wave: whole periods."""
-        step = (1.0 if self.path == "half-wave" else 0.5) / self.given.hz
+        step = (1.0 if self.section.path == "half-wave" else 0.5) / self.section.given.hz
         return math.ceil(quantity(self.asked["dip"]) / step - 1e-9) * step
-
-    # -- rectifier and reservoir ---------------------------------------------------------------
-
-    def is_module(self):
-        return self.rectifier.text("kind") == "bridge"
-
-    def path_loss(self):
-        """V_T0 I_avg + r_T I_rms^2 of one diode in the path, at high."""
-        high = self.at["high"]
-        return self.v_t0_high * high.source_mean + self.r_t * high.source_rms**2
-
-    def package_loss(self):
-        """Module: n_d diodes; one diode of a half-wave path: all; of a full-wave path: half."""
-        if self.is_module():
-            return self.n_d * self.path_loss()
-        return self.path_loss() * (1.0 if self.path == "half-wave" else 0.5)
-
-    def rectifier_mean(self):
-        """Module: the section's mean current; one diode: all of it in half-wave, half in full-wave paths."""
-        return self.at["high"].source_mean * (1.0 if self.is_module() or self.path == "half-wave" else 0.5)
-
-    def rectifier_allowed(self):
-        share = {"capacitive": 1.0, "resistive": 0.8}[self.rectifier.text("io_for", "resistive")]
-        return share * self.rectifier.number("io_a")
-
-    def surge(self):
-        """V_oc sqrt 2 / (R + n_d r_T + ESR): cold winding, thresholds 0, new capacitor."""
-        return self.crest_idle / (self.r_cold + self.n_d * self.r_t + self.esr)
-
-    def peak_inverse(self):
-        return self.crest_idle * (1.0 if self.path == "bridge" else 2.0)
-
-    def rms_per_can(self):
-        return self.at["high"].reservoir_rms / self.cans
-
-    def hot(self):
-        """T_hi + 5 K (rms per can / rating)^2, rating as in reservoir-ripple."""
-        return self.given.t_hi + 5 * (self.rms_per_can() / ripple_rating(self.reservoir, self.path)) ** 2
-
-    def life(self):
-        """life_h 2^((t_max + 5 - hot)/10)."""
-        return self.reservoir.number("life_h") * 2 ** ((self.reservoir.number("t_max_c") + 5 - self.hot()) / 10)
-
-    # -- heat ----------------------------------------------------------------------------------
-
-    def heat(self):
-        """Pass + rectifier + reservoir ESR I^2 + winding copper, at high; the core is counted per transformer."""
-        high = self.at["high"]
-        return (
-            self.pass_power()
-            + self.n_d * self.path_loss()
-            + self.esr * high.reservoir_rms**2
-            + self.r_high * high.source_rms**2
-        )
 
 
 def junction_rise(power, row, sink):
@@ -633,21 +706,21 @@ def met(entry):
     return entry["margin"] is not None and entry["margin"] >= -TOLERANCE * max(abs(entry["bound"]), 1.0)
 
 
-def transformer_limits(out, name, s, given):
-    row, v_primary = s.transformer, s.v_primary
+def transformer_limits(out, name, sections, given):
+    row, v_primary = sections[0].transformer, sections[0].v_primary
     fmin = lambda: row.number("freq_min_hz", 50.0)
     out.add(name, "primary-voltage", "idle", "V", lambda: given.mains_high, "<=",
             lambda: v_primary * min(1.1 * given.hz / fmin(), 1.2))
     out.add(name, "primary-frequency", "", "Hz", lambda: given.hz, ">=", lambda: 0.9 * fmin())
     out.add(name, "transformer-ambient", "", "degC", lambda: given.t_hi, "<=", lambda: row.number("ta_c", 40.0))
-    out.add(name, "transformer-load", "high", "VA",
-            lambda: sum(v * s.at["high"].source_rms * s.hookup.each_share for v in s.hookup.used), "<=",
+    out.add(name, "transformer-load", "high", "VA", lambda: sum(s.windings_va() for s in sections), "<=",
             lambda: row.number("va"))
 
 
-def section_limits(out, s, given):
-    row, can, high = s.rectifier, s.reservoir, s.at["high"]
-    out.add(s.id, "winding-current", "high", "A", lambda: high.source_rms * s.hookup.rms_share, "<=", lambda: s.hookup.i)
+def source_limits(out, s, given):
+    """Winding and rectifier: of a dual pair once, on the positive half."""
+    row = s.rectifier
+    out.add(s.id, "winding-current", "high", "A", s.winding_rms, "<=", lambda: s.hookup.i)
     if s.path == "half-wave":
         out.add(s.id, "core-bias", "high", "A", lambda: s.load, "<=",
                 lambda: 0.0 if s.transformer.text("core") == "toroid" else 0.2 * s.hookup.i)
@@ -658,6 +731,12 @@ def section_limits(out, s, given):
     out.add(s.id, "rectifier-junction", "high", "degC",
             lambda: given.t_hi + junction_rise(s.package_loss(), row, s.rectifier_sink), "<=",
             lambda: row.number("tj_max_c") - given.m_junction)
+
+
+def section_limits(out, s, given):
+    can = s.reservoir
+    if not s.negative_half:
+        source_limits(out, s, given)
     out.add(s.id, "reservoir-voltage", "idle", "V", lambda: s.crest_idle, "<=",
             lambda: can.number("v_rated_v") * (1 - given.m_reservoir))
     out.add(s.id, "reservoir-ripple", "high", "A", s.rms_per_can, "<=", lambda: ripple_rating(can, s.path))
@@ -665,25 +744,27 @@ def section_limits(out, s, given):
     out.add(s.id, "reservoir-life", "high", "h", s.life, ">=", lambda: given.life)
 
 
-def rail_limits(out, s, given):
-    device, name, low = s.device, s.rail, s.at["low"]
-    out.add(name, "headroom", "low", "V", lambda: low.valley, ">=", lambda: s.needed() + given.m_headroom)
-    if "dip" in s.asked:
-        out.add(name, "ride-through", "low", "V", lambda: low.valley - s.load * s.dip_time() / s.c_low, ">=", s.needed)
+def rail_limits(out, rail, given):
+    device, name, s = rail.device, rail.name, rail.section
+    low = s.at["low"]
+    out.add(name, "headroom", "low", "V", lambda: low.valley, ">=", lambda: rail.needed() + given.m_headroom)
+    if "dip" in rail.asked:
+        out.add(name, "ride-through", "low", "V", lambda: low.valley - s.load * rail.dip_time() / s.c_low, ">=", rail.needed)
     both_blank = not device.has("vin_max_v") and not device.has("vdiff_max_v")
     if device.has("vin_max_v") or both_blank:
         out.add(name, "input-ceiling", "idle", "V", lambda: s.crest_idle, "<=", lambda: device.number("vin_max_v"))
     if device.has("vdiff_max_v"):
-        out.add(name, "input-difference", "idle", "V", lambda: s.crest_idle - s.v_out, "<=", lambda: device.number("vdiff_max_v"))
-    out.add(name, "pass-current", "", "A", lambda: s.amps, "<=", lambda: device.number("iout_max_a"))
-    out.add(name, "pass-junction", "high", "degC",
-            lambda: given.t_hi + junction_rise(s.pass_power(), device, s.sink), "<=",
+        out.add(name, "input-difference", "idle", "V", lambda: s.crest_idle - rail.v_out, "<=",
+                lambda: device.number("vdiff_max_v"))
+    out.add(name, "pass-current", "", "A", lambda: rail.amps, "<=", lambda: device.number("iout_max_a"))
+    corner = rail.junction_corner(given.t_hi)
+    out.add(name, "pass-junction", corner, "degC", lambda: rail.junction(corner, given.t_hi), "<=",
             lambda: device.number("tj_max_c") - given.m_junction)
-    if "ripple" in s.asked:
-        value, corner = s.output_ripple()
-        out.add(name, "output-ripple", corner, "V", lambda: value, "<=", lambda: quantity(s.asked["ripple"]))
-    if "accuracy" in s.asked:
-        out.add(name, "output-accuracy", "", "1", s.accuracy, "<=", lambda: quantity(s.asked["accuracy"]))
+    if "ripple" in rail.asked:
+        value, worst = rail.output_ripple()
+        out.add(name, "output-ripple", worst, "V", lambda: value, "<=", lambda: quantity(rail.asked["ripple"]))
+    if "accuracy" in rail.asked:
+        out.add(name, "output-accuracy", "", "1", rail.accuracy, "<=", lambda: quantity(rail.asked["accuracy"]))
 
 
 def supply_limits(out, build, rows, heat, cost):
@@ -704,16 +785,19 @@ def judge(name, build):
     rows = {part: Row(part, cells) for part, cells in build["parts"].items()}
     assert set(rows) == set(quantities(build)), "the rows are exactly those of the build"
     sections = [Section(build, given, rows, s) for s in build["sections"]]
+    for s in sections:
+        s.settle(sections)
     out = Margins()
     heat = 0.0
     for transformer in build["transformers"]:
-        (only,) = [s for s in sections if s.section["transformer"] == transformer["id"]]
-        transformer_limits(out, transformer["id"], only, given)
-        heat += only.heat() + core_loss(only.transformer, given.mains_high, only.v_primary)
+        fed = [s for s in sections if s.transformer_id == transformer["id"]]
+        transformer_limits(out, transformer["id"], fed, given)
+        heat += sum(s.heat() for s in fed) + core_loss(fed[0].transformer, given.mains_high, fed[0].v_primary)
     for s in sections:
         section_limits(out, s, given)
-    for s in sections:
-        rail_limits(out, s, given)
+    rails = {rail.name: rail for s in sections for rail in s.rails}
+    for asked in supply["rail"]:
+        rail_limits(out, rails[asked["name"]], given)
     cost = cost_per_unit(build, rows, builds)
     supply_limits(out, build, rows, heat, cost)
     for part, pieces in quantities(build).items():
@@ -726,7 +810,7 @@ def judge(name, build):
 
 
 # ---------------------------------------------------------------------------------------------
-# The three builds.  All parts are invented.
+# The builds.  All parts are invented.
 # ---------------------------------------------------------------------------------------------
 
 
@@ -890,7 +974,272 @@ def case_half_wave():
     }
 
 
-CASES = [("one rail", case_one_rail), ("two rails", case_two_rails), ("half-wave", case_half_wave)]
+def case_dual_module():
+    """+12 V and -12 V of different loads from one bridge module, on a sink, across two equal windings; banks differ."""
+    return {
+        "schema": "binrail.build/1",
+        "supply": {
+            "name": "Hand build 4: dual with a module",
+            "builds": 30,
+            "mains": {"voltage": "230 V", "tolerance": "10 %", "frequency": "50 Hz"},
+            "ambient": {"low": "-5 degC", "high": "40 degC", "inside_rise": "6 K"},
+            "caps": {"heat": "40 W", "height": "45 mm"},
+            "rail": [
+                {"name": "plus", "voltage": "12 V", "current": "0.9 A", "accuracy": "6 %", "ripple": "6 mV", "dip": "5 ms"},
+                {"name": "minus", "voltage": "-12 V", "current": "0.35 A", "ripple": "6 mV", "dip": "15 ms"},
+            ],
+        },
+        "catalogue": None,
+        "transformers": [{"id": "T1", "part": "Z1-0616"}],
+        "sections": [
+            {"id": "A", "transformer": "T1", "windings": 2, "secondaries": [1, 2], "hookup": "dual", "path": "dual",
+             "pair": "B", "rectifier": "Z2-0404", "rectifier_qty": 1, "rectifier_sink": "Z5-0012",
+             "reservoir": "Z3-0472", "reservoir_qty": 2, "rails": ["plus"]},
+            {"id": "B", "transformer": "T1", "windings": 0, "secondaries": [], "hookup": "dual", "path": "dual",
+             "pair": "A", "rectifier": "Z2-0404", "rectifier_qty": 0, "rectifier_sink": None,
+             "reservoir": "Z3-0332", "reservoir_qty": 1, "rails": ["minus"]},
+        ],
+        "rails": [
+            {"name": "plus", "section": "A", "pass": "Z4-1215", "sink": "Z5-0003"},
+            {"name": "minus", "section": "B", "pass": "Z4-1216", "sink": None},
+        ],
+        "parts": {
+            "Z1-0616": {
+                "price": "13.20", "breaks": "25:12.40", "height_mm": "42", "primary_v": "115+115", "va": "60",
+                "secondary_v": "15.5+15.5+6", "secondary_a": "1.6+1.6+0.5", "regulation_pct": "12", "primary_share_pct": "55",
+                "v_tol_pct": "2", "core_loss_w": "2.4", "core": "laminated", "ta_c": "50",
+            },
+            "Z2-0404": {
+                "price": "0.74", "breaks": "30:0.69", "height_mm": "16", "kind": "bridge", "vrrm_v": "200", "io_a": "2",
+                "ifsm_a": "60", "vf_v": "1.05", "vf_a": "2", "rth_ja_k_w": "40", "rth_jc_k_w": "6", "case": "GBU", "tj_max_c": "150",
+            },
+            "Z3-0472": {
+                "price": "0.88", "height_mm": "36", "c_uf": "4700", "v_rated_v": "40", "esr_mohm": "60", "ripple_a": "2.2",
+                "t_max_c": "105", "life_h": "4000",
+            },
+            "Z3-0332": {
+                "price": "0.66", "stock": "29", "height_mm": "30", "c_uf": "3300", "tol_minus_pct": "10", "tol_plus_pct": "30",
+                "v_rated_v": "35", "esr_mohm": "35", "esr_hz": "100000", "ripple_a": "2.4", "ripple_hz": "100000", "t_max_c": "85",
+                "life_h": "2000",
+            },
+            "Z4-1215": {
+                "price": "0.52", "height_mm": "19", "kind": "fixed", "vout_v": "12", "tol_pct": "4", "dropout_v": "2",
+                "vin_max_v": "40", "iout_max_a": "1.5", "ground_ma": "7", "psrr_db": "61", "load_reg_pct": "0.5",
+                "line_reg_pct_v": "0.03", "rth_jc_k_w": "3", "tj_max_c": "150", "case": "TO-220",
+            },
+            "Z4-1216": {
+                "price": "0.55", "height_mm": "19", "kind": "fixed", "polarity": "-", "vout_v": "12", "tol_pct": "4",
+                "dropout_v": "1.9", "vin_max_v": "40", "iout_max_a": "1", "ground_ma": "5", "psrr_db": "58", "rth_ja_k_w": "32",
+                "tj_max_c": "150",
+            },
+            "Z5-0003": {"price": "1.90", "height_mm": "38", "cases": "TO-220", "rth_sa_k_w": "3.4", "rise_k": "65"},
+            "Z5-0012": {"price": "0.48", "height_mm": "25", "cases": "GBU SIP-4", "rth_sa_k_w": "14", "rth_cs_k_w": "0.8"},
+        },
+    }
+
+
+def case_dual_diodes():
+    """-15 V with -9 V (first, and the heavier half) and +15 V from four diodes on 18-0-18; +5 V from a winding beside it."""
+    return {
+        "schema": "binrail.build/1",
+        "supply": {
+            "name": "Hand build 5: dual with diodes",
+            "builds": 100,
+            "mains": {"voltage": "120 V", "tolerance": "12 %", "frequency": "60 Hz", "flat_top": "2 %"},
+            "ambient": {"low": "5 degC", "high": "35 degC", "inside_rise": "10 K"},
+            "margins": {"headroom": "0.2 V", "reservoir": "5 %", "reverse": "60 %", "junction": "10 K"},
+            "caps": {"cost": 30.0},
+            "rail": [
+                {"name": "minus", "voltage": "-15 V", "current": "0.5 A", "accuracy": "8 %", "ripple": "3 mV"},
+                {"name": "plus", "voltage": "15 V", "current": "0.3 A", "idle": "40 mA", "ripple": "3 mV", "paths": ["dual"]},
+                {"name": "logic", "voltage": "5 V", "current": "0.8 A", "accuracy": "5 %", "dip": "10 ms"},
+                {"name": "bias", "voltage": "-9 V", "current": "0.12 A", "idle": "10 mA", "accuracy": "6 %"},
+            ],
+        },
+        "catalogue": None,
+        "transformers": [{"id": "T1", "part": "Z1-1818"}],
+        "sections": [
+            {"id": "A", "transformer": "T1", "windings": 0, "secondaries": [], "hookup": "dual", "path": "dual",
+             "pair": "B", "rectifier": "Z2-0131", "rectifier_qty": 0, "rectifier_sink": None,
+             "reservoir": "Z3-0222", "reservoir_qty": 2, "rails": ["minus", "bias"]},
+            {"id": "B", "transformer": "T1", "windings": 2, "secondaries": [1, 2], "hookup": "dual", "path": "dual",
+             "pair": "A", "rectifier": "Z2-0131", "rectifier_qty": 4, "rectifier_sink": None,
+             "reservoir": "Z3-0222", "reservoir_qty": 1, "rails": ["plus"]},
+            {"id": "C", "transformer": "T1", "windings": 1, "secondaries": [3], "hookup": "single", "path": "bridge",
+             "pair": None, "rectifier": "Z2-0131", "rectifier_qty": 4, "rectifier_sink": None,
+             "reservoir": "Z3-0472", "reservoir_qty": 2, "rails": ["logic"]},
+        ],
+        "rails": [
+            {"name": "minus", "section": "A", "pass": "Z4-1330", "sink": "Z5-0041"},
+            {"name": "plus", "section": "B", "pass": "Z4-1230", "sink": None},
+            {"name": "logic", "section": "C", "pass": "Z4-0500", "sink": "Z5-0041"},
+            {"name": "bias", "section": "A", "pass": "Z4-1330", "sink": None},
+        ],
+        "parts": {
+            "Z1-1818": {
+                "price": "11.80", "height_mm": "52", "primary_v": "100/120", "freq_min_hz": "50", "va": "56",
+                "secondary_v": "18-0-18+8.5", "secondary_a": "1.1-0-1.1+1.9", "regulation_pct": "13", "winding_c": "95",
+                "core": "laminated", "ta_c": "45",
+            },
+            "Z2-0131": {
+                "price": "0.06", "breaks": "500:0.041", "kind": "diode", "type": "schottky", "vrrm_v": "100", "io_a": "1",
+                "io_for": "capacitive", "ifsm_a": "40", "threshold_v": "0.45", "slope_mohm": "90", "rth_ja_k_w": "65",
+                "tj_max_c": "150",
+            },
+            "Z3-0222": {
+                "price": "0.44", "breaks": "200:0.38", "stock": "300", "c_uf": "2200", "v_rated_v": "35", "esr_mohm": "75",
+                "esr_hz": "120", "ripple_a": "1.5", "ripple_hz": "120", "t_max_c": "105", "life_h": "3000",
+            },
+            "Z3-0472": {
+                "price": "0.61", "c_uf": "4.7 mF", "tol_plus_pct": "50", "v_rated_v": "25", "esr_mohm": "55", "ripple_a": "2.1",
+                "t_max_c": "85", "life_h": "5000",
+            },
+            "Z4-1330": {
+                "price": "0.83", "breaks": "200:0.71", "kind": "adjustable", "polarity": "-", "vout_min_v": "1.25",
+                "vout_max_v": "30", "vref_v": "1.25", "tol_pct": "4", "dropout_v": "2.3", "dropout_light_v": "1.4",
+                "vdiff_max_v": "40", "iout_max_a": "1.5", "ground_ma": "0.1", "psrr_db": "66", "load_reg_pct": "0.5",
+                "line_reg_pct_v": "0.02", "rth_jc_k_w": "4", "rth_ja_k_w": "50", "tj_max_c": "125", "case": "TO-220",
+            },
+            "Z4-1230": {
+                "price": "0.61", "kind": "adjustable", "vout_min_v": "1.25", "vout_max_v": "32", "vref_v": "1.25", "tol_pct": "3",
+                "dropout_v": "2.5", "vdiff_max_v": "35", "vin_max_v": "45", "iout_max_a": "1", "ground_ma": "0.1",
+                "psrr_db": "64", "psrr_vout_v": "10", "rth_ja_k_w": "38", "tj_max_c": "125",
+            },
+            "Z4-0500": {
+                "price": "0.48", "kind": "fixed", "vout_v": "5", "tol_pct": "3", "dropout_v": "1.7", "vin_max_v": "30",
+                "iout_max_a": "1", "ground_ma": "9", "load_reg_pct": "0.8", "line_reg_pct_v": "0.02", "rth_jc_k_w": "3.5",
+                "tj_max_c": "150", "case": "TO-220",
+            },
+            "Z5-0041": {"price": "0.95", "cases": "TO-220", "rth_sa_k_w": "6.2", "rise_k": "50"},
+        },
+    }
+
+
+def case_shared_section():
+    """+12 V, +5 V and +9 V from one section: with the others idle the raw voltage rises, and `alone` is the worse corner."""
+    return {
+        "schema": "binrail.build/1",
+        "supply": {
+            "name": "Hand build 6: one section, three rails",
+            "builds": 20,
+            "mains": {"voltage": "230 V", "tolerance": "10 %", "frequency": "50 Hz"},
+            "ambient": {"low": "10 degC", "high": "45 degC", "inside_rise": "3 K"},
+            "rail": [
+                {"name": "drive", "voltage": "12 V", "current": "1.1 A", "idle": "1.1 A", "section": "X", "ripple": "8 mV", "dip": "3 ms"},
+                {"name": "logic", "voltage": "5 V", "current": "0.25 A", "idle": "30 mA", "section": "X", "accuracy": "5 %"},
+                {"name": "sensor", "voltage": "9 V", "current": "0.15 A", "ripple": "2 mV", "dip": "12 ms"},
+            ],
+        },
+        "catalogue": None,
+        "transformers": [{"id": "T1", "part": "Z1-0518"}],
+        "sections": [
+            {"id": "A", "transformer": "T1", "windings": 1, "secondaries": [1], "hookup": "single", "path": "bridge",
+             "pair": None, "rectifier": "Z2-0404", "rectifier_qty": 1, "rectifier_sink": None,
+             "reservoir": "Z3-0682", "reservoir_qty": 2, "rails": ["drive", "logic", "sensor"]},
+        ],
+        "rails": [
+            {"name": "drive", "section": "A", "pass": "Z4-1212", "sink": "Z5-0018"},
+            {"name": "logic", "section": "A", "pass": "Z4-0505", "sink": "Z5-0018"},
+            {"name": "sensor", "section": "A", "pass": "Z4-0909", "sink": None},
+        ],
+        "parts": {
+            "Z1-0518": {
+                "price": "10.90", "primary_v": "230", "va": "60", "secondary_v": "16", "regulation_pct": "14", "v_tol_pct": "3",
+                "core_loss_w": "2.2", "core": "laminated", "ta_c": "50",
+            },
+            "Z2-0404": {
+                "price": "0.74", "kind": "bridge", "vrrm_v": "200", "io_a": "4", "ifsm_a": "120", "threshold_v": "0.75",
+                "slope_mohm": "30", "rth_ja_k_w": "22", "tj_max_c": "150",
+            },
+            "Z3-0682": {
+                "price": "1.05", "c_uf": "6800", "v_rated_v": "35", "esr_mohm": "40", "ripple_a": "3", "t_max_c": "105",
+                "life_h": "5000",
+            },
+            "Z4-1212": {
+                "price": "0.52", "kind": "fixed", "vout_v": "12", "tol_pct": "3", "dropout_v": "1.2", "vin_max_v": "35",
+                "iout_max_a": "1.5", "ground_ma": "12", "psrr_db": "60", "rth_jc_k_w": "2.5", "tj_max_c": "150", "case": "TO-220",
+            },
+            "Z4-0505": {
+                "price": "0.33", "kind": "fixed", "vout_v": "5", "tol_pct": "2.5", "dropout_v": "2", "vin_max_v": "35",
+                "iout_max_a": "0.5", "ground_ma": "6", "load_reg_pct": "0.5", "line_reg_pct_v": "0.05", "rth_jc_k_w": "5",
+                "tj_max_c": "125", "case": "TO-220",
+            },
+            "Z4-0909": {
+                "price": "0.29", "kind": "fixed", "vout_v": "9", "tol_pct": "4", "dropout_v": "1.8", "vin_max_v": "35",
+                "iout_max_a": "0.5", "ground_ma": "4", "psrr_db": "64", "rth_ja_k_w": "30", "tj_max_c": "150",
+            },
+            "Z5-0018": {"price": "2.10", "cases": "TO-220 TO-247", "rth_sa_k_w": "2.2", "rise_k": "70", "rth_cs_k_w": "0.6"},
+        },
+    }
+
+
+def case_shared_transformer():
+    """+5 V from parallel windings and -12 V from a floating half-wave section with a positive device, on one transformer."""
+    return {
+        "schema": "binrail.build/1",
+        "supply": {
+            "name": "Hand build 7: one transformer, two sections",
+            "builds": 10,
+            "mains": {"voltage": "230 V", "low": "200 V", "high": "250 V", "frequency": "50 Hz"},
+            "ambient": {"low": "-20 degC", "high": "40 degC", "inside_rise": "2 K"},
+            "caps": {"heat": "12 W"},
+            "rail": [
+                {"name": "logic", "voltage": "5 V", "current": "1 A", "accuracy": "5 %", "ripple": "10 mV"},
+                {"name": "guard", "voltage": "-12 V", "current": "40 mA", "isolated": True, "dip": "15 ms",
+                 "paths": ["half-wave"]},
+            ],
+        },
+        "catalogue": None,
+        "transformers": [{"id": "T1", "part": "Z1-0916"}],
+        "sections": [
+            {"id": "A", "transformer": "T1", "windings": 2, "secondaries": [1, 2], "hookup": "parallel", "path": "bridge",
+             "pair": None, "rectifier": "Z2-0104", "rectifier_qty": 4, "rectifier_sink": None,
+             "reservoir": "Z3-0103", "reservoir_qty": 1, "rails": ["logic"]},
+            {"id": "B", "transformer": "T1", "windings": 1, "secondaries": [3], "hookup": "single", "path": "half-wave",
+             "pair": None, "rectifier": "Z2-0104", "rectifier_qty": 1, "rectifier_sink": None,
+             "reservoir": "Z3-0471", "reservoir_qty": 3, "rails": ["guard"]},
+        ],
+        "rails": [
+            {"name": "logic", "section": "A", "pass": "Z4-0510", "sink": "Z5-0041"},
+            {"name": "guard", "section": "B", "pass": "Z4-1205", "sink": None},
+        ],
+        "parts": {
+            "Z1-0916": {
+                "price": "9.60", "primary_v": "230", "va": "30", "secondary_v": "9+9+16", "secondary_a": "1.2+1.2+0.3",
+                "regulation_pct": "16", "winding_c": "80", "primary_share_pct": "40", "v_tol_pct": "1.5", "core": "laminated",
+                "ta_c": "50",
+            },
+            "Z2-0104": {
+                "price": "0.11", "breaks": "50:0.08", "kind": "diode", "vrrm_v": "100", "io_a": "2", "ifsm_a": "60", "vf_v": "1",
+                "vf_a": "2", "rth_ja_k_w": "50", "tj_max_c": "150",
+            },
+            "Z3-0103": {
+                "price": "1.15", "c_uf": "10000", "v_rated_v": "25", "esr_mohm": "30", "ripple_a": "3.2", "t_max_c": "105",
+                "life_h": "5000",
+            },
+            "Z3-0471": {
+                "price": "0.28", "c_uf": "470", "v_rated_v": "50", "esr_mohm": "300", "ripple_a": "0.6", "t_max_c": "105",
+                "life_h": "4000",
+            },
+            "Z4-0510": {
+                "price": "0.45", "kind": "fixed", "vout_v": "5", "tol_pct": "3", "dropout_v": "1.6", "vin_max_v": "35",
+                "iout_max_a": "1", "ground_ma": "8", "psrr_db": "62", "load_reg_pct": "0.6", "line_reg_pct_v": "0.03",
+                "rth_jc_k_w": "3", "tj_max_c": "150", "case": "TO-220",
+            },
+            "Z4-1205": {
+                "price": "0.24", "kind": "fixed", "vout_v": "12", "tol_pct": "5", "dropout_v": "1.7", "vin_max_v": "40",
+                "iout_max_a": "0.1", "ground_ma": "3", "rth_ja_k_w": "150", "tj_max_c": "150",
+            },
+            "Z5-0041": {"price": "0.95", "cases": "TO-220", "rth_sa_k_w": "6.2", "rise_k": "50"},
+        },
+    }
+
+
+CASES = [
+    ("one rail", case_one_rail), ("two rails", case_two_rails), ("half-wave", case_half_wave),
+    ("dual with a module", case_dual_module), ("dual with diodes", case_dual_diodes),
+    ("one section, three rails", case_shared_section), ("one transformer, two sections", case_shared_transformer),
+]
 
 
 def work_out():
@@ -1007,18 +1356,20 @@ def verify():
         check("   rms / mean", a.source_rms / load, rms, 1e-4)
         if peak:
             check("   peak / mean", a.source_peak / load, peak, 1e-4)
-    # The solved corners of the three builds: charge, energy and a time integration.
+    # The solved corners of the builds: charge, energy and a time integration.
     for case, sections in work_out():
         for s in sections:
-            for corner, (v_oc, r, vt, c, esr) in {
-                "low": (s.v_oc_low, s.r_low, s.v_t0_low, s.c_low, s.esr_low),
-                "high": (s.v_oc_high, s.r_high, s.v_t0_high, s.c_high, s.esr),
-                "worn": (s.v_oc_high, s.r_high, s.v_t0_high, s.c_low, s.esr_low),
-            }.items():
-                circuit = Circuit(v_oc * math.sqrt(2), s.n_d * vt, r + s.n_d * s.r_t, c, esr, s.load, s.given.hz, s.path != "half-wave")
-                a, name = s.at[corner], f"{case['name']} {s.id} {corner}"
-                check(f"{name} mean i = I_L", a.source_mean, s.load, 1e-12)
-                check(f"{name} reservoir rms", a.reservoir_rms, math.sqrt(a.source_rms**2 - s.load**2), 1e-11)
+            circuits = {
+                "low": (s.circuit(s.v_oc_low, s.r_low, s.v_t0_low, s.c_low, s.esr_low, s.load), s.at["low"]),
+                "high": (s.circuit(s.v_oc_high, s.r_high, s.v_t0_high, s.c_high, s.esr, s.load), s.at["high"]),
+                "worn": (s.circuit(s.v_oc_high, s.r_high, s.v_t0_high, s.c_low, s.esr_low, s.load), s.at["worn"]),
+            }
+            if len(s.rails) > 1:
+                circuits |= {f"{rail.name} alone": (s.alone_circuit(rail), rail.alone) for rail in s.rails}
+            for corner, (circuit, a) in circuits.items():
+                name = f"{case['name']} {s.id} {corner}"
+                check(f"{name} mean i = I_L", a.source_mean, circuit.load, 1e-12)
+                check(f"{name} reservoir rms", a.reservoir_rms, math.sqrt(a.source_rms**2 - circuit.load**2), 1e-11)
                 valley, peak, mean, i_mean, i_rms = march(circuit)
                 check(f"{name} valley, marched", valley, a.valley, 1e-8)
                 check(f"{name} peak, marched", peak, a.peak, 1e-8)
