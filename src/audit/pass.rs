@@ -160,6 +160,26 @@ impl<'c> Stage<'c> {
         ))
     }
 
+    /// The same when all that is known of the low corner is the lowest waveform and the highest peak that it can have.
+    #[must_use]
+    pub fn ripple_within(
+        &self,
+        lowest: Known<&Waveform>,
+        peak_v: f64,
+        high: Known<&Waveform>,
+        worn: Known<&Waveform>,
+    ) -> Option<Check> {
+        let asked_v = self.rail.ripple_v?;
+        let most = || -> Known<f64> {
+            let db = self.rejection_db(lowest?)?;
+            let raw_v = (peak_v - lowest?.valley_v())
+                .max(high?.ripple_v())
+                .max(worn?.ripple_v());
+            Ok(output_ripple_v(raw_v, db))
+        };
+        Some(Check::new(Limit::OutputRipple, Corner::Low, most(), Ok(asked_v)))
+    }
+
     /// Ripple rejection at this output and at the headroom of the low corner.
     fn rejection_db(&self, low: &Waveform) -> Known<f64> {
         let stated_db = self.device.psrr_db.ok_or("psrr_db")?;

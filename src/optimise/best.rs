@@ -52,8 +52,8 @@ pub(super) trait Wanted<'c> {
     /// Nothing with a score above this is of interest.
     fn limit(&self) -> f64;
 
-    /// Nothing whose cost and heat are at least these is of interest.
-    fn beyond(&self, cost: i64, heat: i64) -> bool;
+    /// Nothing whose cost, heat and score are at least these is of interest.
+    fn beyond(&self, cost: i64, heat: i64, score: f64) -> bool;
 
     /// Offers a feasible build.
     fn offer(&mut self, bill: Bill, cost: i64, heat: i64, build: &mut dyn FnMut() -> Build<'c>);
@@ -78,13 +78,13 @@ impl<'c> Wanted<'c> for Best<'c> {
         self.worst.map_or(self.ceiling, |worst| worst.0.min(self.ceiling)) as f64 + self.charge
     }
 
-    fn beyond(&self, cost: i64, heat: i64) -> bool {
+    fn beyond(&self, cost: i64, heat: i64, _score: f64) -> bool {
         let least = self.objective.order(cost, heat);
         least.0 > self.ceiling || self.worst.is_some_and(|worst| least > worst)
     }
 
     fn offer(&mut self, bill: Bill, cost: i64, heat: i64, build: &mut dyn FnMut() -> Build<'c>) {
-        if self.beyond(cost, heat) {
+        if self.beyond(cost, heat, 0.0) {
             return;
         }
         let build = build();

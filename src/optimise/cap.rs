@@ -53,7 +53,7 @@ pub(super) fn charge<'c>(
     let cap = cap * 1e6 * (1.0 + 1e-8) + 2.0;
     // The least score by a weighting, and how much of the capped quantity its build takes.
     let mut look = |by: Weights, best: &mut Best<'c>| {
-        let mut search = Search::start(ground, question, by, counts);
+        let mut search = Search::start(ground, question, by, question.top == 1, counts);
         let cover = search.settle(counts);
         if !cover.is_empty() {
             search.offer_first(&cover, best, counts);

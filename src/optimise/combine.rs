@@ -210,7 +210,11 @@ impl<'f, 'w, 's, 'a, 'c> Combine<'f, 'w, 's, 'a, 'c> {
             let changes = so_far.changes + ready.changes;
             // A hair less than the sum, which the audit adds up in another order.
             let cool = site.holds(whole::heat(site.supply, Ok((heat_w + rest_heat) * (1.0 - 1e-12))));
-            if self.work.wanted.beyond(so_far.cost + floor + rest_cost, least_heat)
+            let least_score = decided + own + rest_score;
+            if self
+                .work
+                .wanted
+                .beyond(so_far.cost + floor + rest_cost, least_heat, least_score)
                 || !cool
                 || changes.saturating_add(rest_changes) > near
             {
@@ -225,7 +229,7 @@ impl<'f, 'w, 's, 'a, 'c> Combine<'f, 'w, 's, 'a, 'c> {
                 let affordable = site.holds(whole::cost(site.supply, Money(least)));
                 if affordable
                     && !self.too_far(score(weights, cost, heat_w) + rest_score)
-                    && !self.work.wanted.beyond(least, least_heat)
+                    && !(self.work.wanted).beyond(least, least_heat, score(weights, cost, heat_w) + rest_score)
                     && self.carried(depth)
                 {
                     if depth + 1 == self.order.len() {

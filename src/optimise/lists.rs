@@ -6,14 +6,12 @@ use std::sync::Mutex;
 
 use super::Question;
 use super::best::Bill;
+use super::rivals::{Market, NEVER_TIES_W};
 use crate::audit::{Check, Site, whole};
 use crate::build::{Place, wiring};
 use crate::catalogue::Part;
 use crate::screen::{Apart, Counts, Feed, FlowKey, Group, Outlet, Plan, Stop, Walk, Weights, heat_floor};
 use crate::units::Money;
-
-/// Two feeds with the same lines whose heats differ by more than this never tie in whole microwatts.
-const NEVER_TIES_W: f64 = 1.5e-6;
 
 /// A feed, or the transformer of a plan, ready to be combined.
 pub(super) struct Ready<'c> {
@@ -75,6 +73,9 @@ pub(super) struct View {
     seen: usize,
     /// Least heat by lines: of equal lines only the coolest can matter, where nothing else tells them apart.
     coolest: Option<BTreeMap<Bill, f64>>,
+    /// Of those that hold, whether they surely hold beside the plan's other sections; kept where only the best build is
+    /// wanted.
+    robust: Option<Vec<bool>>,
     /// Places that may differ from the build to stay close to.
     most_changes: usize,
     /// Least score of those that hold, or of those that were not looked at.
@@ -105,15 +106,34 @@ impl View {
         may_matter
     }
 
+    /// Whether one of those that hold betters it.
+    fn bettered(&self, groups: &[Group], outlet: &Outlet, flow: &Flow, ready: &Ready) -> bool {
+        let Some(robust) = &self.robust else { return false };
+        let market = Market {
+            group: &groups[outlet.group()],
+            outlet,
+        };
+        let held = self.held.iter().zip(robust);
+        held.into_iter()
+            .any(|(&place, &robust)| market.betters(&flow.ready[place], robust, ready))
+    }
+
     /// Looks at what has come; only up to the first that holds if `only_first`.
     fn look(&mut self, site: &Site, groups: &[Group], outlet: &Outlet, flow: &Flow, only_first: bool) {
         while let Some(ready) = flow.ready.get(self.seen) {
             if only_first && !self.held.is_empty() {
                 break;
             }
-            let holds = |feed: &Feed| feed.changes <= self.most_changes && feed.holds_beside(site, groups, outlet);
-            if ready.feed.as_ref().is_some_and(holds) && self.is_coolest(ready) {
+            let near = |feed: &&Feed| feed.changes <= self.most_changes;
+            if let Some(feed) = ready.feed.as_ref().filter(near)
+                && !self.bettered(groups, outlet, flow, ready)
+                && feed.may_hold(site, groups, outlet)
+                && self.is_coolest(ready)
+            {
                 self.held.push(self.seen);
+                if let Some(robust) = &mut self.robust {
+                    robust.push(outlet.others_va() > 0.0 && feed.surely_holds(site, groups, outlet));
+                }
             }
             self.seen += 1;
         }
@@ -155,13 +175,15 @@ pub(super) struct Lists<'a, 'c> {
 const HANDFUL: usize = 4;
 
 impl<'a, 'c> Lists<'a, 'c> {
-    /// Starts every walk.
+    /// Starts every walk; `only_best`: only builds matter that no other betters or equals in cost and heat and betters in
+    /// one.
     pub(super) fn start(
         site: &'a Site<'c>,
         question: &Question<'c>,
         groups: &'a [Group<'c>],
         plans: &'a [Plan<'c>],
         weights: Weights,
+        only_best: bool,
         counts: &mut Counts,
     ) -> Lists<'a, 'c> {
         let rails = question.supply.rails.len();
@@ -191,6 +213,7 @@ impl<'a, 'c> Lists<'a, 'c> {
                     held: Vec::new(),
                     seen: 0,
                     coolest: single.then(BTreeMap::new),
+                    robust: only_best.then(Vec::new),
                     most_changes,
                     floor: f64::NEG_INFINITY,
                     need: f64::NEG_INFINITY,
@@ -219,7 +242,7 @@ impl<'a, 'c> Lists<'a, 'c> {
                 most,
             });
             Flow {
-                walk: Walk::new(site, groups, outlet, weights, apart),
+                walk: Walk::new(site, groups, outlet, weights, apart, only_best),
                 ready: Vec::new(),
                 need: f64::NEG_INFINITY,
             }

@@ -8,13 +8,16 @@ mod combine;
 mod company;
 mod frame_build;
 mod frames;
+mod front;
 mod lists;
 mod milp;
+mod rivals;
 mod search;
 mod tighten;
 
 pub use best::{Found, Key};
 pub use company::{Companies, Company, Joint, Nearest, Reasons, Rejection, companies, rejections};
+pub use front::front;
 pub use milp::{Answer, Choices, Column, PlanChoice, Solver, least};
 
 use std::collections::BTreeSet;
@@ -162,7 +165,7 @@ fn search<'c>(
         return None;
     };
     best.set_charge(charge.whole);
-    let end = Search::start(ground, question, charge.weights, counts).run(best, counts);
+    let end = Search::start(ground, question, charge.weights, question.top == 1, counts).run(best, counts);
     #[allow(clippy::cast_possible_truncation)] // saturates
     match end {
         End::Complete => None,
@@ -175,7 +178,7 @@ pub fn with_choices<R>(question: &Question, look: impl FnOnce(&Choices) -> R) ->
     let site = Site::new(question.supply).with_tightness(question.tightness);
     let ground = Ground::new(&site, question.catalogue, &must(question, Vec::new()));
     let mut counts = Counts::default();
-    let mut search = Search::start(&ground, question, Weights::of(question.objective), &mut counts);
+    let mut search = Search::start(&ground, question, Weights::of(question.objective), false, &mut counts);
     look(&everything(&mut search, &mut counts))
 }
 

@@ -66,13 +66,18 @@ pub(super) struct Search<'g, 'c> {
 }
 
 impl<'g, 'c> Search<'g, 'c> {
+    /// `only_best`: only builds matter that no other betters or equals in cost and heat and betters in one.
     pub(super) fn start(
         ground: &'g Ground<'g, 'c>,
         question: &'g Question<'c>,
         weights: Weights,
+        only_best: bool,
         counts: &mut Counts,
     ) -> Search<'g, 'c> {
-        let lists = Lists::start(ground.site, question, &ground.groups, &ground.plans, weights, counts);
+        // What is closer to a given build, or tighter, may matter though it is dearer and hotter.
+        let only_best = only_best && question.near.is_none() && question.tightness == f64::NEG_INFINITY;
+        let (groups, plans) = (&ground.groups, &ground.plans);
+        let lists = Lists::start(ground.site, question, groups, plans, weights, only_best, counts);
         let least = lists.least();
         Search {
             ground,

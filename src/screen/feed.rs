@@ -2,9 +2,10 @@
 
 use super::plan::Outlet;
 use super::reach::{Group, loads};
-use crate::audit::{Corner, Known, Raw, Site, Stage};
+use crate::audit::{Corner, Raw, Site, Stage};
 use crate::build::pieces_of_rectifier;
 use crate::catalogue::{Part, PassDevice, Rectifier, Reservoir, Sink};
+use crate::physics::raw_section::Waveform;
 use crate::supply::Path;
 use crate::units::Money;
 
@@ -32,10 +33,58 @@ pub struct Feed<'c> {
     pub va: f64,
     /// Least cost that it can have in any build, the transformer aside.
     pub floor_cost: Money,
+    /// Load of its section.
+    pub load_a: f64,
     /// Whether it holds with the transformer to itself; otherwise its ripple at the low corner may hold beside others.
     pub holds_alone: bool,
     /// In how many places it differs from the build to stay close to, those of the plan aside.
     pub changes: usize,
+}
+
+/// A feed's section beside others on its transformer.
+struct Beside<'a, 'c> {
+    site: &'a Site<'c>,
+    raw: Raw<'a>,
+    stages: Vec<Stage<'a>>,
+    load_a: f64,
+}
+
+impl<'a, 'c> Beside<'a, 'c> {
+    fn new(feed: &Feed<'a>, site: &'a Site<'c>, groups: &'a [Group<'c>], outlet: &Outlet) -> Self {
+        let source = &groups[outlet.group].sources[outlet.source];
+        let rails = outlet.rails.iter().map(|&rail| &site.supply.rails[rail]);
+        Beside {
+            site,
+            raw: Raw {
+                transformer: source.transformer,
+                hookup: &source.hookup,
+                path: source.path,
+                rectifier: feed.rectifier,
+                reservoir: feed.reservoir,
+                cans: feed.cans,
+            },
+            stages: rails
+                .zip(&feed.devices)
+                .map(|(rail, &(device, _))| Stage::new(rail, device))
+                .collect(),
+            load_a: feed.load_a,
+        }
+    }
+
+    /// At low, high and worn, with so much drawn by the others.
+    fn waves(&self, others_va: f64) -> Option<[Waveform; 3]> {
+        let all = loads(self.raw.hookup, self.load_a, others_va);
+        let at = |corner| self.raw.wave(self.site, corner, Ok(self.load_a), Ok(&all)).ok();
+        Some([at(Corner::Low)?, at(Corner::High)?, at(Corner::Worn)?])
+    }
+
+    /// Headroom, dip and accuracy.
+    fn supplied(&self, stage: &Stage, waves: &[Waveform; 3]) -> bool {
+        let site = self.site;
+        site.holds(stage.headroom(site, Ok(&waves[0])))
+            && site.holds(stage.ride_through(site, &self.raw, Ok(self.load_a), Ok(&waves[0])))
+            && site.holds(stage.accuracy(Ok(&waves[0]), Ok(&waves[1])))
+    }
 }
 
 impl<'c> Feed<'c> {
@@ -50,50 +99,35 @@ impl<'c> Feed<'c> {
     }
 
     /// Whether it can hold at the low corner beside what the plan's other sections draw at least. More of it lowers the
-    /// valley (see `Solved`), so what fails here stays so; the rest is for the audit of the whole plan.
+    /// raw voltage at every instant (see `Solved`), so what fails here stays so; the rest is for the audit of the plan.
     #[must_use]
-    pub fn holds_beside(&self, site: &Site, groups: &[Group], outlet: &Outlet) -> bool {
+    pub fn may_hold(&self, site: &Site, groups: &[Group], outlet: &Outlet) -> bool {
         if outlet.others_va <= 0.0 {
             return self.holds_alone;
         }
-        let source = &groups[outlet.group].sources[outlet.source];
-        let raw = Raw {
-            transformer: source.transformer,
-            hookup: &source.hookup,
-            path: source.path,
-            rectifier: self.rectifier,
-            reservoir: self.reservoir,
-            cans: self.cans,
-        };
-        let stages = || {
-            let rails = outlet.rails.iter().map(|&rail| &site.supply.rails[rail]);
-            rails
-                .zip(&self.devices)
-                .map(|(rail, &(device, _))| Stage::new(rail, device))
-        };
-        let load_a: Known<f64> = stages().try_fold(0.0, |sum, stage| Ok(sum + stage.load_a()?));
-        let Ok(load_a) = load_a else { return false };
-        let all = loads(raw.hookup, load_a, outlet.others_va);
-        let at = |corner| raw.wave(site, corner, Ok(load_a), Ok(&all));
-        let Ok(low) = at(Corner::Low) else { return false };
-        let holds = |stage: Stage| {
-            site.holds(stage.headroom(site, Ok(&low)))
-                && site.holds(stage.ride_through(site, &raw, Ok(load_a), Ok(&low)))
-        };
-        if !stages().all(holds) {
-            return false;
-        }
-        if stages().all(|stage| stage.rail.ripple_v.is_none() && stage.rail.accuracy.is_none()) {
-            return true;
-        }
-        let (Ok(high), Ok(worn)) = (at(Corner::High), at(Corner::Worn)) else {
+        let section = Beside::new(self, site, groups, outlet);
+        let Some(waves) = section.waves(outlet.others_va) else {
             return false;
         };
-        stages().all(|stage| {
-            let ripple = stage.ripple(Ok(&low), Ok(&high), Ok(&worn));
+        section.stages.iter().all(|stage| {
+            let ripple = stage.ripple(Ok(&waves[0]), Ok(&waves[1]), Ok(&waves[2]));
             // The ripple at the low corner itself has no sign.
-            (site.holds(ripple) || ripple.is_some_and(|c| c.corner == Some(Corner::Low)))
-                && site.holds(stage.accuracy(Ok(&low), Ok(&high)))
+            let no_sign = ripple.is_some_and(|c| c.corner == Some(Corner::Low));
+            section.supplied(stage, &waves) && (no_sign || site.holds(ripple))
+        })
+    }
+
+    /// Whether it holds at the low corner whatever the plan's other sections draw: with the lowest voltage that they leave,
+    /// and with all ripple between the highest crest and the lowest valley.
+    #[must_use]
+    pub fn surely_holds(&self, site: &Site, groups: &[Group], outlet: &Outlet) -> bool {
+        let section = Beside::new(self, site, groups, outlet);
+        let (Some(kind), Some(hard)) = (section.waves(outlet.others_va), section.waves(outlet.others_most_va)) else {
+            return false;
+        };
+        section.stages.iter().all(|stage| {
+            let ripple = stage.ripple_within(Ok(&hard[0]), kind[0].peak_v(), Ok(&hard[1]), Ok(&hard[2]));
+            section.supplied(stage, &hard) && site.holds(ripple)
         })
     }
 

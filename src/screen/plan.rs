@@ -30,6 +30,8 @@ pub struct Outlet<'c> {
     pub rectifier: Option<&'c Rectifier>,
     /// What the other sections of the transformer draw at least: rated volts times load.
     pub(super) others_va: f64,
+    /// What they draw at most.
+    pub(super) others_most_va: f64,
 }
 
 /// What tells apart the walks of outlets: group, source, the rectifier of a dual pair, and whether the outlet holds the
@@ -37,6 +39,18 @@ pub struct Outlet<'c> {
 pub type FlowKey = (usize, usize, Option<PartId>, bool);
 
 impl Outlet<'_> {
+    /// Place of its group.
+    #[must_use]
+    pub fn group(&self) -> usize {
+        self.group
+    }
+
+    /// What the other sections of the transformer draw at least: rated volts times load; 0: there are none.
+    #[must_use]
+    pub fn others_va(&self) -> f64 {
+        self.others_va
+    }
+
     /// Outlets with the same key have the same feeds, the low corner beside other sections aside.
     #[must_use]
     pub fn flow_key(&self) -> FlowKey {
@@ -236,6 +250,9 @@ impl<'c> Planner<'_, 'c> {
         let drawn: Vec<f64> = (self.drafts.iter())
             .map(|d| self.source(d).hookup.volts_v * self.source(d).load_a)
             .collect();
+        let most_drawn: Vec<f64> = (self.drafts.iter())
+            .map(|d| self.source(d).hookup.volts_v * self.source(d).most_load_a)
+            .collect();
         let mut next = vec![0; self.windings.len()];
         let mut outlets = Vec::with_capacity(order.len());
         for &d in &order {
@@ -250,10 +267,7 @@ impl<'c> Planner<'_, 'c> {
                 let places = &self.windings[draft.windings].places[from..from + count];
                 hookup.secondaries.extend_from_slice(places);
             }
-            let others_va = (0..drawn.len())
-                .filter(|&other| other != d)
-                .map(|other| drawn[other])
-                .sum();
+            let others = |of: &[f64]| -> f64 { (0..of.len()).filter(|&o| o != d).map(|o| of[o]).sum() };
             outlets.push(Outlet {
                 group: draft.group,
                 source: draft.source,
@@ -262,7 +276,8 @@ impl<'c> Planner<'_, 'c> {
                 rails: self.groups[draft.group].shelf.rails.clone(),
                 pair: draft.pair.and_then(|(other, _)| order.iter().position(|&o| o == other)),
                 rectifier: draft.pair.map(|(_, rectifier)| rectifier),
-                others_va,
+                others_va: others(&drawn),
+                others_most_va: others(&most_drawn),
             });
         }
         let plan = Plan {

@@ -38,4 +38,18 @@ impl FloorPrices {
         let most = (here + self.elsewhere[part.id.0 as usize]) * self.builds;
         part.least_cost(pieces, most)
     }
+
+    /// Most by which `own` pieces of a part cost more in a build than `its` in their place, whatever else takes of it, up
+    /// to `more` pieces beside what the other rails can; `None` where the stock may not suffice for more pieces.
+    pub(super) fn most_dearer(&self, part: &Part, own: u64, its: u64, more: u64) -> Option<i64> {
+        if own == its {
+            return Some(0);
+        }
+        let rest = self.elsewhere[part.id.0 as usize] + more;
+        if own > its && part.stock.is_some_and(|stock| stock < (rest + own) * self.builds) {
+            return None;
+        }
+        let cost = |pieces: u64| (part.unit_price(pieces * self.builds) * pieces).0;
+        (0..=rest).map(|rest| cost(rest + own) - cost(rest + its)).max()
+    }
 }

@@ -28,6 +28,8 @@ pub(super) struct Source<'c> {
     pub(super) by_price: Vec<Vec<usize>>,
     /// Least load of the section.
     pub(super) load_a: f64,
+    /// Most load.
+    pub(super) most_load_a: f64,
     /// By rail, the least valley and the least input that regulates, over its devices.
     pub(super) levels: Vec<(f64, f64)>,
 }
@@ -85,6 +87,15 @@ impl<'c> Group<'c> {
             group.banks.sort_by_key(|&(i, price)| (price, i));
         }
         groups
+    }
+}
+
+impl Group<'_> {
+    /// Most by which `own` pieces of a part cost more in a build than `its` in their place, whatever the rest of it;
+    /// `None` where the stock may not suffice for more pieces.
+    #[must_use]
+    pub fn most_dearer(&self, part: &Part, own: u64, its: u64) -> Option<i64> {
+        self.prices.most_dearer(part, own, its, 0)
     }
 }
 
@@ -231,6 +242,7 @@ fn sources<'c>(site: &Site<'c>, shelf: &Shelf<'c>) -> Vec<Source<'c>> {
                     stages: Vec::new(),
                     by_price: Vec::new(),
                     load_a: 0.0,
+                    most_load_a: 0.0,
                     levels: Vec::new(),
                 };
                 found.extend(with_devices(site, shelf, source));
@@ -277,6 +289,7 @@ fn with_devices<'c>(site: &Site<'c>, shelf: &Shelf<'c>, mut source: Source<'c>) 
         }
     }
     source.load_a = lists.iter().map(|list| list[0].1).sum();
+    source.most_load_a = lists.iter().filter_map(|list| list.last()).map(|last| last.1).sum();
     source.levels = (lists.iter().zip(&shelf.stages))
         .map(|(list, kinds)| {
             let floor_v = |&(i, _, _): &(usize, f64, f64)| kinds[i].floor_v.unwrap_or(f64::INFINITY);

@@ -13,6 +13,8 @@ pub(super) struct Losses {
     pub(super) pass_w: Vec<f64>,
     /// The same with the other rails of the section idle; empty for a rail that has the section to itself.
     pub(super) alone_w: Vec<f64>,
+    /// Load of the section.
+    pub(super) load_a: f64,
     /// Apparent power of its windings.
     pub(super) va: f64,
     /// Whether all holds with the transformer to itself too.
@@ -119,6 +121,7 @@ impl Solved {
                 .map(|stage| stage.loss_w(high).ok())
                 .collect::<Option<_>>()?,
             alone_w,
+            load_a,
             va: transformer::section_va(raw.hookup, raw.path, rms_a),
             alone_holds,
         })

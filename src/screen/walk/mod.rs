@@ -99,6 +99,8 @@ pub struct Walk<'a, 'c> {
     holds: bool,
     weights: Weights,
     apart: Option<Apart>,
+    /// Whether only builds matter that no other betters or equals in cost and heat and betters in one.
+    only_best: bool,
     pairs: Vec<Pair>,
     sections: Vec<Section>,
     stacks: Vec<Stack<'c>>,
@@ -108,7 +110,8 @@ pub struct Walk<'a, 'c> {
 }
 
 impl<'a, 'c> Walk<'a, 'c> {
-    /// Starts the walk of one outlet; `apart` when only builds close to a given one are wanted.
+    /// Starts the walk of one outlet; `apart` when only builds close to a given one are wanted;
+    /// `only_best`: only builds matter that no other betters or equals in cost and heat and betters in one.
     #[must_use]
     pub fn new(
         site: &'a Site<'c>,
@@ -116,6 +119,7 @@ impl<'a, 'c> Walk<'a, 'c> {
         outlet: &Outlet<'c>,
         weights: Weights,
         apart: Option<Apart>,
+        only_best: bool,
     ) -> Walk<'a, 'c> {
         let group = &groups[outlet.group];
         let source = &group.sources[outlet.source];
@@ -126,6 +130,7 @@ impl<'a, 'c> Walk<'a, 'c> {
             holds: !outlet.hookup.secondaries.is_empty(),
             weights,
             apart,
+            only_best,
             pairs: Vec::new(),
             sections: Vec::new(),
             stacks: Vec::new(),

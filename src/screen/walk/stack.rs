@@ -8,6 +8,7 @@ use crate::build::sink_takes;
 use crate::catalogue::{RectifierKind, Sink};
 use crate::screen::feed::Feed;
 use crate::screen::solved::Losses;
+use crate::supply::Path;
 use crate::units::Money;
 
 impl<'c> Walk<'_, 'c> {
@@ -73,19 +74,26 @@ impl<'c> Walk<'_, 'c> {
         // On the negative half nothing stands of the rectifier; its junction is judged with the positive one.
         let mut sinks = if self.holds {
             let module = rectifier.kind == RectifierKind::Bridge;
-            vec![self.sinks_that(rectifier.case.as_deref().filter(|_| module), |sink| {
-                self.site
-                    .holds(rectifier::junction(self.site, rectifier, Ok(losses.package_w), sink))
-            })]
+            let mut list = self.sinks_that(rectifier.case.as_deref().filter(|_| module), |sink| {
+                let junction = rectifier::junction(self.site, rectifier, Ok(losses.package_w), sink);
+                self.site.holds(junction)
+            });
+            // In a pair the package takes the losses of the other half too, so a better sink may be needed.
+            if self.source.path != Path::Dual {
+                self.drop_bettered(&mut list);
+            }
+            vec![list]
         } else {
             vec![vec![None]]
         };
         for (rail, stage) in stages.iter().enumerate() {
-            sinks.push(self.sinks_that(stage.device.case.as_deref(), |sink| {
+            let mut list = self.sinks_that(stage.device.case.as_deref(), |sink| {
                 let at = |corner, power_w| stage.junction(self.site, corner, Ok(power_w), sink);
                 self.site.holds(at(Corner::High, losses.pass_w[rail]))
                     && (losses.alone_w.get(rail)).is_none_or(|&w| self.site.holds(at(Corner::Alone, w)))
-            }));
+            });
+            self.drop_bettered(&mut list);
+            sinks.push(list);
         }
         if sinks.iter().any(Vec::is_empty) {
             return None;
@@ -114,12 +122,39 @@ impl<'c> Walk<'_, 'c> {
                 section_w: losses.section_w,
                 pass_w: losses.pass_w.clone(),
                 va: losses.va,
+                load_a: losses.load_a,
                 holds_alone: losses.alone_holds,
                 floor_cost: Money(cost) + self.group.prices.cost(&bank.can.part, u64::from(bank.cans)),
                 changes,
             },
             sinks,
         })
+    }
+
+    /// Drops sinks that another one of the list betters: cheaper in the same place whatever the rest of the build, and in
+    /// stock for any. Where all hold, nothing else tells them apart.
+    fn drop_bettered(&self, sinks: &mut Vec<Option<&'c Sink>>) {
+        let demanded = self.group.shelf.must_sinks.iter().any(|must| !must.is_empty());
+        if !self.only_best || demanded {
+            return;
+        }
+        // What the section itself can take of the same part in other places.
+        let more = self.group.shelf.rails.len() as u64;
+        let dearer = |sink: Option<&Sink>, own, its| {
+            sink.map_or(Some(0), |s| self.group.prices.most_dearer(&s.part, own, its, more))
+        };
+        let betters = |a: Option<&Sink>, b: Option<&Sink>| {
+            dearer(a, 1, 0)
+                .zip(dearer(b, 0, 1))
+                .is_some_and(|(more, less)| more + less < 0)
+        };
+        let mut kept: Vec<Option<&'c Sink>> = Vec::new();
+        for &sink in sinks.iter() {
+            if !kept.iter().any(|&better| betters(better, sink)) {
+                kept.push(sink);
+            }
+        }
+        *sinks = kept;
     }
 
     fn sink_cost(&self, sink: Option<&Sink>) -> Money {
