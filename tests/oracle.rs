@@ -1,5 +1,6 @@
-//! The optimizer against brute force on small random cases: every combination of parts, judged by the audit and sorted
-//! by the key (objective, other, text), must give the same builds in the same order, whatever bounds and orders the search uses.
+//! The optimizer against brute force on small random cases: every way to share and every combination of parts, judged by
+//! the audit and sorted by the key (objective, other, text), must give the same builds in the same order, whatever bounds
+//! and orders the search uses.
 //!
 //! A failure prints the whole case. ORACLE_SEEDS=a..b in the environment runs other seeds.
 #![allow(clippy::unwrap_used, clippy::print_stdout, unreachable_pub)]
@@ -38,9 +39,9 @@ use binrail::supply::{Path, Supply};
 
 use brute_force::{Brute, Judged, Wish};
 use common::Random;
-use oracle_run::{OBJECTIVES, Tally, hold, keys, over, over_kind, question, solve};
+use oracle_run::{OBJECTIVES, Tally, hold, keys, over, question, solve};
 use own_rules::{Bill, own_hookups, price};
-use small_case::{Case, Kind};
+use small_case::Case;
 
 /// Longest that a solver may take for one answer.
 const SECONDS: f64 = 20.0;
@@ -85,7 +86,10 @@ fn the_optimum_and_the_order_are_those_of_brute_force() {
             ("the optimum shares a break", 15),
             ("the optimum is half-wave", 5),
             ("the optimum is centre-tapped", 20),
-            ("the optimum has a floating section", 10),
+            ("the optimum has a floating section", 20),
+            ("the optimum shares a section", 50),
+            ("the optimum shares a transformer", 40),
+            ("the optimum has a dual pair", 10),
         ] {
             assert!(tally.of(what) >= least, "{what}: {tally:#?}");
         }
@@ -324,7 +328,8 @@ fn an_interrupted_search_has_a_true_bound() {
                     let outcome = optimise(&asked).unwrap_or_else(|bug| panic!("{bug:?}: {what}"));
                     match outcome.proof {
                         Proof::Proved => {
-                            assert!(!at_once, "{what}");
+                            // There may be nothing to search.
+                            assert!(!at_once || whole.is_empty(), "{what}");
                             assert_eq!(keys(&outcome), whole, "{what}");
                             tally.add("proved", 1);
                         }
@@ -372,24 +377,5 @@ fn an_optimum_above_the_least_prices_is_found() {
     for top in [1, 50] {
         let asked = question(&supply, &catalogue, Objective::Cost, top);
         hold(&case, "one build", &asked, &list);
-    }
-}
-
-#[test]
-fn tmp_cases() {
-    for kind in [Kind::Any, Kind::Isolated, Kind::Pinned, Kind::Floating, Kind::Dual] {
-        let tally = Tally::default();
-        let start = Instant::now();
-        over_kind(kind, [0, 30, 30], |case| {
-            let t = Instant::now();
-            let (catalogue, supply) = (case.catalogue(), case.supply());
-            let brute = Brute::new(&supply, &catalogue);
-            tally.add("brute ms", t.elapsed().as_millis() as usize);
-            for objective in OBJECTIVES {
-                let list = brute.list(&catalogue, objective, &Wish::default());
-                count(&tally, objective, &supply, &catalogue, &brute, &list);
-            }
-        });
-        println!("{kind:?} {:?} {tally:#?}", start.elapsed());
     }
 }

@@ -10,6 +10,7 @@ use serde_json::{Value, json};
 use crate::brute_force::{Brute, Wish};
 use crate::choices::{Choices, assemble};
 use crate::layouts::{layouts, partitions, set_partitions};
+use crate::oracle_run::{hold, question};
 use crate::own_rules::{apart, groups, takes};
 use crate::small_case::{Case, Kind};
 
@@ -295,7 +296,11 @@ fn two_rails_of_either_sign() {
             with: vec![(id(part), Some(rail))],
             ..Wish::default()
         };
-        brute.list(&catalogue, Objective::Cost, &wish)[0].cost
+        let list = brute.list(&catalogue, Objective::Cost, &wish);
+        let mut asked = question(&supply, &catalogue, Objective::Cost, 10);
+        asked.with.clone_from(&wish.with);
+        hold(&case, &format!("with {part} at {rail}"), &asked, &list);
+        list[0].cost
     };
     assert_eq!(
         [with("B", 0), with("B", 1), with("P", 0), with("N", 0)],

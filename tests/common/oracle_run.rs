@@ -29,6 +29,7 @@ pub fn over_kind(kind: Kind, seeds: [u64; 3], work: impl Fn(&Case) + Sync) {
     });
     let cases: Vec<(usize, u64)> = (1..)
         .zip(seeds)
+        .filter(|&(_, seeds)| seeds > 0)
         .flat_map(|(rails, seeds)| asked.clone().unwrap_or(0..seeds).map(move |seed| (rails, seed)))
         .collect();
     let next = AtomicUsize::new(0);
@@ -78,20 +79,23 @@ pub fn keys_of(list: &[&Judged]) -> Keys {
     list.iter().map(key).collect()
 }
 
-/// The whole front, cheapest first: one cap on heat after the other, each just below what the last build has.
+/// The whole front, cheapest first, found from its other end: one cap on cost after the other, each below what the last
+/// build costs. (A cap on heat would not do: the audit lets builds pass it by a rounding error.)
 pub fn front(case: &Case, question: &Question) -> Keys {
     let mut found = Keys::new();
     let mut supply = question.supply.clone();
     loop {
         let asked = Question {
             supply: &supply,
+            objective: Objective::Heat,
             ..question.clone()
         };
         let Some(next) = keys(&solve(case, "front", &asked)).pop() else {
+            found.reverse();
             return found;
         };
-        // Between two whole microwatts.
-        supply.caps.heat_w = Some((next.1 as f64 - 0.5) * 1e-6);
+        // Between two whole millionths.
+        supply.caps.cost = Some((next.0 as f64 - 0.5) * 1e-6);
         found.push(next);
     }
 }

@@ -351,7 +351,7 @@ fn ask(random: &mut Random, first: Option<&Ask>, kind: Kind) -> Ask {
     };
     Ask {
         out_v,
-        negative: random.chance(0.25),
+        negative: random.chance(0.3),
         floating: false,
         amps: *random.pick(amps),
         half_wave,
