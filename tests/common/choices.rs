@@ -414,7 +414,10 @@ pub fn product<T: Clone>(lists: &[Vec<T>]) -> Vec<Vec<T>> {
     let mut found = vec![Vec::new()];
     for list in lists {
         found = (found.iter())
-            .flat_map(|head: &Vec<T>| list.iter().map(move |item| [head.as_slice(), &[item.clone()]].concat()))
+            .flat_map(|head: &Vec<T>| {
+                list.iter()
+                    .map(move |item| [head.as_slice(), std::slice::from_ref(item)].concat())
+            })
             .collect();
     }
     found

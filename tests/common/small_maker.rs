@@ -344,7 +344,7 @@ fn ask(random: &mut Random, first: Option<&Ask>, kind: Kind) -> Ask {
     let out_v = match first {
         Some(first) if random.chance(0.5) => first.out_v,
         Some(first) if random.chance(0.75) => {
-            let place = VOLTS.iter().position(|&v| v == first.out_v).unwrap();
+            let place = VOLTS.iter().position(|v| v.to_bits() == first.out_v.to_bits()).unwrap();
             VOLTS[if place > 0 { place - 1 } else { 1 }]
         }
         _ => *random.pick(&VOLTS),
