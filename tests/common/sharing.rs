@@ -180,7 +180,7 @@ fn the_nearest_build_is_that_of_brute_force() {
                     }),
                     ..question(&supply, &catalogue, objective, 1)
                 };
-                let what = format!("{:?} near, without {}", best.fields, name(&catalogue, part));
+                let what = format!("near, without {}", name(&catalogue, part));
                 tally.add("asked", 1);
                 let Some((least, nearest)) = brute.nearest(&catalogue, &best.build, objective, &wish) else {
                     hold(case, &what, &ask(supply.rails.len() * 7), &[]);
