@@ -1,26 +1,43 @@
 //! Seeded small catalogues and supplies for the oracle tests, as the rows and keys that the readers take.
 //!
-//! Parts are drawn around what the rails need (see `small_parts`), a draw that comes out too big or without any build
-//! is drawn again, and a quarter gets a cap on cost or heat that lies among its builds.
+//! Rails and parts are drawn around each other (see `small_maker` and `small_parts`), a draw that comes out too big,
+//! without any build, or without what its kind is about is drawn again, and a quarter gets a cap on cost or heat that lies
+//! among its builds.
 #![allow(dead_code)]
 
-use std::collections::BTreeSet;
+use std::collections::BTreeMap;
 use std::fmt;
+use std::sync::Mutex;
 
 use binrail::audit::audit;
-use binrail::build::Build;
-use binrail::catalogue::{Catalogue, Slot, Status, columns, from_cells};
+use binrail::catalogue::{Catalogue, Slot, columns, from_cells};
 use binrail::supply::{Supply, from_json};
 use serde_json::{Value, json};
 
-use crate::brute_force::singles;
+use crate::choices::{Choices, assemble};
 use crate::common::Random;
-use crate::small_parts::{Ask, VOLTS};
+use crate::layouts::{Layout, Unit, layouts};
+use crate::small_maker::draw;
 
-/// Combinations of what each rail's own limits allow: no case has more, so that all of them can be audited.
-const MOST_JOINT: usize = 12_000;
+/// Builds of parts that pass section by section: no case has more, so that all of them can be audited.
+const MOST_JOINT: u64 = 12_000;
 /// Most cases have at least so many.
-const LEAST_JOINT: usize = 8;
+const LEAST_JOINT: u64 = 8;
+
+/// What a case is to be about.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Kind {
+    /// Whatever comes; sharing mostly possible.
+    Any,
+    /// A rail that could share is isolated.
+    Isolated,
+    /// Rails that could share name a section, the same or two.
+    Pinned,
+    /// A negative rail that no negative device serves.
+    Floating,
+    /// A positive and a negative rail of like voltage and the parts for a pair.
+    Dual,
+}
 
 /// One row of a catalogue.
 #[derive(Debug, Clone)]
@@ -111,254 +128,119 @@ impl Case {
         }
     }
 
-    /// The case of a seed. Every tenth is taken as it comes, so that some have no build.
-    pub fn new(seed: u64, rails: usize) -> Case {
-        for attempt in 0.. {
-            let mut random = Random::new(seed * 1_000_000 + rails as u64 * 10_000 + attempt);
-            let mut case = Case::draw(seed, &mut random, rails);
-            let (catalogue, supply) = (case.catalogue(), case.supply());
-            let (each, _) = singles(&supply, &catalogue);
-            let joint: usize = each.iter().map(Vec::len).product();
-            let sold = |build: &&Build| build.uses().all(|(part, _)| part.status != Status::Withdrawn);
-            let usual: usize = each.iter().map(|builds| builds.iter().filter(sold).count()).product();
-            if joint > MOST_JOINT || usual < LEAST_JOINT && seed % 10 != 9 {
-                continue;
-            }
-            if seed % 4 == 1 && joint > 0 {
-                let mut some = (0, 0.0);
-                for (rail, builds) in each.iter().enumerate() {
-                    let mut alone = supply.clone();
-                    alone.rails = vec![supply.rails[rail].clone()];
-                    let verdict = audit(&alone, random.pick(builds));
-                    some = (some.0 + verdict.cost.0, some.1 + verdict.heat_w.unwrap());
-                }
-                let caps = &mut case.supply["caps"];
-                if random.chance(0.6) {
-                    caps["cost"] = json!(some.0 as f64 / 1e6);
-                }
-                if caps.get("cost").is_none() || random.chance(0.3) {
-                    caps["heat"] = json!(format!("{:.3} W", some.1));
-                }
-            }
-            return case;
+    /// The case of a seed, drawn once. Every tenth is taken as it comes, so that some have no build.
+    pub fn new(seed: u64, rails: usize, kind: Kind) -> Case {
+        static DRAWN: Mutex<BTreeMap<(u64, usize, usize), Case>> = Mutex::new(BTreeMap::new());
+        let key = (seed, rails, kind as usize);
+        let drawn = DRAWN.lock().unwrap().get(&key).cloned();
+        drawn.unwrap_or_else(|| {
+            let case = (0..)
+                .find_map(|attempt| Case::attempt(seed, rails, kind, attempt))
+                .unwrap();
+            DRAWN.lock().unwrap().insert(key, case.clone());
+            case
+        })
+    }
+
+    fn attempt(seed: u64, rails: usize, kind: Kind, attempt: u64) -> Option<Case> {
+        let start = (seed * 10 + kind as u64) * 1_000_000 + rails as u64 * 100_000 + attempt;
+        let mut random = Random::new(start);
+        // Some cases of any kind are about pairs, which seldom come up otherwise.
+        let about = match kind {
+            Kind::Any if rails > 1 && seed % 10 == 6 => Kind::Dual,
+            kind => kind,
+        };
+        let mut case = draw(seed, &mut random, rails, about);
+        let (catalogue, supply) = (case.catalogue(), case.supply());
+        let as_it_comes = seed % 10 == 9;
+        if !as_it_comes && !case.shows(about, &supply, &catalogue) {
+            return None;
         }
-        unreachable!("attempts do not end")
-    }
-
-    fn draw(seed: u64, random: &mut Random, rails: usize) -> Case {
-        let mut maker = Maker::new(random, rails);
-        let (sizes, copies, cans) = maker.sizes(rails);
-        for (slot, size) in Slot::ALL.into_iter().zip(sizes) {
-            (0..size).for_each(|_| maker.part(slot));
+        let choices = Choices::new(&supply, &catalogue);
+        let least = if rails == 1 { LEAST_JOINT } else { LEAST_JOINT * 4 };
+        let (all, sold) = (choices.count_all(false), choices.count_all(true));
+        if all > MOST_JOINT || sold < least && !as_it_comes {
+            return None;
         }
-        (0..copies).for_each(|_| maker.copy());
-        Case {
-            seed,
-            supply: maker.supply(cans),
-            rows: maker.rows,
+        if seed % 4 == 1 && all > 0 {
+            case.cap(&mut random, &supply, &choices, all);
         }
-    }
-}
-
-struct Maker<'r> {
-    random: &'r mut Random,
-    builds: u64,
-    mains_v: u32,
-    asks: Vec<Ask>,
-    names: BTreeSet<String>,
-    rows: Vec<Row>,
-}
-
-impl<'r> Maker<'r> {
-    fn new(random: &'r mut Random, rails: usize) -> Maker<'r> {
-        let first_v = *random.pick(&VOLTS);
-        let asks = (0..rails)
-            .map(|rail| {
-                let half_wave = random.chance(0.15);
-                let amps: &[f64] = if half_wave {
-                    &[0.1, 0.2]
-                } else {
-                    &[0.2, 0.5, 0.5, 0.8, 1.0]
-                };
-                Ask {
-                    // Rails of one voltage share most parts.
-                    out_v: if rail == 0 || random.chance(0.6) {
-                        first_v
-                    } else {
-                        *random.pick(&VOLTS)
-                    },
-                    negative: random.chance(0.25),
-                    amps: *random.pick(amps),
-                    half_wave,
-                }
-            })
-            .collect();
-        Maker {
-            builds: *random.pick(&[1, 1, 7, 50]),
-            mains_v: *random.pick(&[230, 230, 120]),
-            random,
-            asks,
-            names: BTreeSet::new(),
-            rows: Vec::new(),
-        }
+        Some(case)
     }
 
-    /// Rows of each slot, copies of rows, most cans.
-    fn sizes(&mut self, rails: usize) -> ([usize; 5], usize, u64) {
-        let r = &mut self.random;
-        match rails {
-            1 => (
-                [3, 3, 2 + r.below(2), 3, 2 + r.below(2)],
-                r.below(3),
-                2 + r.below(2) as u64,
-            ),
-            2 => ([2 + r.below(2), 2, 2, 3, 1 + r.below(2)], r.below(3), 2),
-            _ => ([2 + r.below(2), 1 + r.below(2), 1 + r.below(2), 3, 1], r.below(2), 2),
-        }
-    }
-
-    /// The rail that the next part is made for: in turn, then any.
-    fn ask(&mut self, slot: Slot) -> Ask {
-        let made = self.rows.iter().filter(|row| row.slot == slot).count();
-        let any = self.random.below(self.asks.len());
-        *self.asks.get(made).unwrap_or(&self.asks[any])
-    }
-
-    /// Short names of unequal length, so that one begins another and bytes are compared to their end.
-    fn name(&mut self, slot: Slot) -> String {
-        let letter = ["T", "B", "C", "U", "S"][slot as usize];
-        loop {
-            let most = *self.random.pick(&[10, 200]);
-            let name = format!("{letter}{}", self.random.below(most));
-            if self.names.insert(name.clone()) {
-                return name;
-            }
-        }
-    }
-
-    fn part(&mut self, slot: Slot) {
-        let ask = self.ask(slot);
-        let name = self.name(slot);
-        let (cells, tenths) = ask.part(self.random, slot, self.mains_v);
-        let mut row = Row { slot, name, cells };
-        self.trade(&mut row, tenths);
-        self.rows.push(row);
-    }
-
-    /// The data of a row under another name: the same heat, and often the same price.
-    fn copy(&mut self) {
-        let mut row = self.random.pick(&self.rows).clone();
-        row.name = self.name(row.slot);
-        if self.random.chance(0.6) {
-            let price: f64 = row.cell("price").unwrap().parse().unwrap();
-            let tenths = (price * 10.0).round() as usize + self.random.below(2);
-            ["breaks", "stock", "status"]
+    /// Whether the layouts that the kind is about have a build, section by section.
+    fn shows(&self, kind: Kind, supply: &Supply, catalogue: &Catalogue) -> bool {
+        let rails = supply.rails.len();
+        let possible =
+            |supply: &Supply, layouts: Vec<Layout>| Choices::of(supply, catalogue, layouts, true).count_all(true) > 0;
+        let some = |which: &dyn Fn(&Layout) -> bool| {
+            possible(
+                supply,
+                layouts(supply).into_iter().filter(|layout| which(layout)).collect(),
+            )
+        };
+        let shares = |layout: &Layout| {
+            layout
                 .iter()
-                .for_each(|column| row.clear(column));
-            self.trade(&mut row, tenths);
-        }
-        self.rows.push(row);
-    }
-
-    /// Price, breaks that one rail alone seldom reaches, stock that several cannot share, status, height.
-    fn trade(&mut self, row: &mut Row, tenths: usize) {
-        let price = |tenths: usize| format!("{}.{}", tenths / 10, tenths % 10);
-        let r = &mut self.random;
-        row.set("price", price(tenths));
-        if r.chance(0.45) {
-            let first = self.builds * *r.pick(&[2, 2, 2, 3]) - u64::from(self.builds > 1 && r.chance(0.2));
-            let deepest = if r.chance(0.2) {
-                tenths
-            } else {
-                tenths.div_ceil(3).min(6)
-            };
-            let cheaper = tenths - 1 - r.below(deepest);
-            let mut breaks = format!("{first}:{}", price(cheaper));
-            if r.chance(0.4) && cheaper > 1 {
-                breaks += &format!(" {}:{}", first + self.builds * 2, price(cheaper - 1));
+                .flatten()
+                .flat_map(|unit| &unit.sections)
+                .any(|s| s.len() > 1)
+        };
+        match kind {
+            Kind::Dual => some(&|layout| layout.iter().flatten().any(Unit::is_dual)),
+            // What the key forbids could be built without it.
+            Kind::Isolated | Kind::Pinned => {
+                let free = self.without_keys(&["isolated", "section"]).supply();
+                let kept = layouts(supply);
+                possible(
+                    &free,
+                    layouts(&free)
+                        .into_iter()
+                        .filter(|layout| !kept.contains(layout))
+                        .collect(),
+                )
             }
-            row.set("breaks", breaks);
-        }
-        if r.chance(0.25) {
-            let stock = match r.below(10) {
-                0 => 0,
-                1..=4 => self.builds,
-                5..=7 => self.builds * 2,
-                _ => self.builds * 2 + self.builds / 2,
-            };
-            row.set("stock", stock);
-        }
-        match r.below(20) {
-            0 => row.set("status", "withdrawn"),
-            1 | 2 => row.set("status", "last-buy"),
-            _ => {}
-        }
-        if !r.chance(0.1) {
-            row.set("height_mm", *r.pick(&[20, 25, 30, 40]));
+            Kind::Any if rails > 1 && !supply.share_never => match self.seed % 10 {
+                0..=2 => some(&|layout| shares(layout)),
+                3..=5 => some(&|layout| layout.len() < rails && !shares(layout)),
+                _ => true,
+            },
+            Kind::Any | Kind::Floating => true,
         }
     }
 
-    fn supply(&mut self, cans: u64) -> Value {
-        let rails: Vec<Value> = (0..self.asks.len()).map(|rail| self.rail(rail)).collect();
-        let r = &mut self.random;
-        let mut supply = json!({
-            "builds": self.builds,
-            "mains": {
-                "voltage": format!("{} V", self.mains_v),
-                "tolerance": *r.pick(&["6 %", "10 %"]),
-                "frequency": if self.mains_v == 120 { "60 Hz" } else { "50 Hz" },
-            },
-            "ambient": {
-                "low": *r.pick(&["-10 degC", "0 degC", "20 degC"]),
-                "high": *r.pick(&["30 degC", "40 degC"]),
-                "inside_rise": *r.pick(&["0 K", "5 K"]),
-            },
-            "caps": { "cans": cans },
-            "rail": rails,
-        });
-        if r.chance(0.5) {
-            supply["ageing"] = json!({ "life": *r.pick(&["5000 h", "10000 h"]), "esr_rise": 1.5 });
+    /// The same with these keys gone from every rail.
+    pub fn without_keys(&self, keys: &[&str]) -> Case {
+        let mut free = self.clone();
+        for rail in free.supply["rail"].as_array_mut().unwrap() {
+            let rail = rail.as_object_mut().unwrap();
+            keys.iter().for_each(|&key| {
+                rail.shift_remove(key);
+            });
         }
-        if r.chance(0.3) {
-            supply["margins"] = json!({ "headroom": "0.5 V", "reverse": "20 %", "junction": "5 K" });
-        }
-        if r.chance(0.15) {
-            supply["caps"]["height"] = json!("30 mm");
-        }
-        if self.asks.len() > 1 {
-            supply["share"] = json!("never");
-        }
-        supply
+        free
     }
 
-    fn rail(&mut self, place: usize) -> Value {
-        let ask = self.asks[place];
-        let r = &mut self.random;
-        let sign = if ask.negative { "-" } else { "" };
-        let mut rail = json!({
-            "name": format!("rail {}", place + 1),
-            "voltage": format!("{sign}{} V", ask.out_v),
-            "current": format!("{} A", ask.amps),
-        });
-        if r.chance(0.3) {
-            rail["accuracy"] = json!(*r.pick(&["5 %", "6 %"]));
+    /// Caps cost or heat at what some build of the case has.
+    fn cap(&mut self, random: &mut Random, supply: &Supply, choices: &Choices, joint: u64) {
+        let rails: Vec<usize> = (0..supply.rails.len()).collect();
+        let wanted = random.below(joint as usize);
+        let (mut place, mut some) = (0, None);
+        for layout in &choices.layouts {
+            choices.each(layout, &mut |chosen| {
+                if place == wanted {
+                    some = Some(audit(supply, &assemble(&rails, chosen)));
+                }
+                place += 1;
+            });
         }
-        if r.chance(0.3) {
-            rail["ripple"] = json!(*r.pick(&["5 mV", "10 mV", "20 mV"]));
+        let some = some.unwrap();
+        let caps = &mut self.supply["caps"];
+        if random.chance(0.6) {
+            caps["cost"] = json!(some.cost.value());
         }
-        if r.chance(0.2) {
-            rail["dip"] = json!(*r.pick(&["5 ms", "10 ms"]));
+        if caps.get("cost").is_none() || random.chance(0.3) {
+            caps["heat"] = json!(format!("{:.3} W", some.heat_w.unwrap()));
         }
-        match r.below(8) {
-            0 | 1 => rail["paths"] = json!(["bridge", "half-wave"]),
-            _ if ask.half_wave => rail["paths"] = json!(["half-wave"]),
-            2 => rail["paths"] = json!(["half-wave", "centre-tap"]),
-            3 => rail["paths"] = json!(["bridge"]),
-            _ => {}
-        }
-        if r.chance(0.15) {
-            rail["devices"] = json!([*r.pick(&["fixed", "adjustable"])]);
-        }
-        rail
     }
 }

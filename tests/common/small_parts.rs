@@ -16,6 +16,8 @@ pub const VOLTS: [f64; 5] = [3.3, 5.0, 9.0, 12.0, 15.0];
 pub struct Ask {
     pub out_v: f64,
     pub negative: bool,
+    /// Negative, and no negative device serves it.
+    pub floating: bool,
     pub amps: f64,
     /// Mostly on a half-wave path: more copper, more capacitance.
     pub half_wave: bool,
@@ -33,8 +35,24 @@ impl Ask {
         }
     }
 
+    /// What a section asks that feeds all of these.
+    pub fn joined(asks: &[Ask]) -> Ask {
+        let most_v = asks.iter().map(|ask| ask.out_v).fold(0.0, f64::max);
+        Ask {
+            out_v: most_v,
+            amps: asks.iter().map(|ask| ask.amps).sum(),
+            half_wave: asks.iter().all(|ask| ask.half_wave),
+            ..asks[0]
+        }
+    }
+
+    /// Rated voltage of a winding that feeds it through a bridge.
+    fn winding_v(&self, r: &mut Random) -> f64 {
+        ((self.out_v + r.between(5.0, 9.0)) / 1.2 * 2.0).round() / 2.0
+    }
+
     fn transformer(&self, r: &mut Random, mains_v: u32) -> Cells {
-        let volts = ((self.out_v + r.between(5.0, 9.0)) / 1.2 * 2.0).round() / 2.0;
+        let volts = self.winding_v(r);
         let half = (volts / 2.0 * 2.0).ceil() / 2.0;
         let (secondary, windings) = match r.below(9) {
             0 => (format!("{volts}"), 1.0),
@@ -46,33 +64,8 @@ impl Ask {
             7 => (format!("8+{half}-0-{half}"), 1.5),
             _ => (format!("{half}+{half}+{half}"), 1.5),
         };
-        let va = (volts * self.amps * 2.0 * windings * r.between(0.7, 2.0))
-            .max(3.0)
-            .ceil();
-        let primary = match (mains_v, r.below(3)) {
-            (230, 0) => "230",
-            (120, 0) => "120",
-            (230, 1) => "115+115",
-            _ => "100/120/230",
-        };
-        let mut cells = vec![
-            ("primary_v", primary.to_owned()),
-            ("va", va.to_string()),
-            ("secondary_v", secondary.clone()),
-            ("regulation_pct", r.pick(&[8, 10, 12, 15]).to_string()),
-            ("core", (*r.pick(&["laminated", "laminated", "toroid"])).to_owned()),
-            ("ta_c", r.pick(&[50, 60, 70]).to_string()),
-        ];
-        if r.chance(0.6) {
-            cells.push(("core_loss_w", format!("{}", (va * 0.4).round() / 10.0)));
-        }
-        if r.chance(0.3) {
-            cells.push(("v_tol_pct", "2".into()));
-        }
-        if r.chance(0.1) {
-            cells.retain(|(column, _)| *column != "core" && *column != "ta_c");
-        }
-        cells
+        let va = volts * self.amps * 2.0 * windings * r.between(0.7, 2.0);
+        core(r, secondary, va, mains_v)
     }
 
     fn rectifier(&self, r: &mut Random) -> (Cells, usize) {
@@ -136,7 +129,7 @@ impl Ask {
 
     fn pass_device(&self, r: &mut Random) -> Cells {
         let fixed = r.chance(0.6);
-        let minus = self.negative && r.chance(0.6);
+        let minus = self.negative && !self.floating && r.chance(0.7);
         let mut cells = vec![
             ("kind", (if fixed { "fixed" } else { "adjustable" }).to_owned()),
             ("polarity", (if minus { "-" } else { "+" }).to_owned()),
@@ -182,6 +175,63 @@ impl Ask {
         blank(r, &mut cells, &["psrr_db", "ground_ma", "rth_ja_k_w", "case"]);
         cells
     }
+}
+
+/// A transformer with a winding for each of these sections: often equal ones, two of them often the halves of x-0-x.
+pub fn shared_transformer(r: &mut Random, sections: &[Ask], mains_v: u32) -> Cells {
+    let mut volts: Vec<f64> = sections.iter().map(|s| s.winding_v(r)).collect();
+    let mut amps: Vec<f64> = sections.iter().map(|s| s.amps * r.between(1.5, 2.6)).collect();
+    let most = |of: &[f64]| of.iter().copied().fold(0.0, f64::max);
+    let equal = r.chance(0.6);
+    if equal {
+        volts = vec![most(&volts); volts.len().max(2)];
+        amps = vec![most(&amps); volts.len()];
+    }
+    let va = volts.iter().zip(&amps).map(|(v, a)| v * a).sum::<f64>() * r.between(0.8, 1.5);
+    let tapped = equal && volts.len() == 2 && r.chance(0.4);
+    let list = |of: &[f64], digits: usize| {
+        let numbers: Vec<String> = of.iter().map(|x| format!("{x:.digits$}")).collect();
+        numbers.join("+")
+    };
+    let secondary = if tapped {
+        format!("{:.1}-0-{0:.1}", volts[0])
+    } else {
+        list(&volts, 1)
+    };
+    let mut cells = core(r, secondary, va, mains_v);
+    if !tapped && r.chance(0.6) {
+        cells.push(("secondary_a", list(&amps, 2)));
+    }
+    cells
+}
+
+/// The cells of a transformer with these secondaries.
+fn core(r: &mut Random, secondary: String, va: f64, mains_v: u32) -> Cells {
+    let va = va.max(3.0).ceil();
+    let primary = match (mains_v, r.below(3)) {
+        (230, 0) => "230",
+        (120, 0) => "120",
+        (230, 1) => "115+115",
+        _ => "100/120/230",
+    };
+    let mut cells = vec![
+        ("primary_v", primary.to_owned()),
+        ("va", va.to_string()),
+        ("secondary_v", secondary),
+        ("regulation_pct", r.pick(&[8, 10, 12, 15]).to_string()),
+        ("core", (*r.pick(&["laminated", "laminated", "toroid"])).to_owned()),
+        ("ta_c", r.pick(&[50, 60, 70]).to_string()),
+    ];
+    if r.chance(0.6) {
+        cells.push(("core_loss_w", format!("{}", (va * 0.4).round() / 10.0)));
+    }
+    if r.chance(0.3) {
+        cells.push(("v_tol_pct", "2".into()));
+    }
+    if r.chance(0.1) {
+        cells.retain(|(column, _)| *column != "core" && *column != "ta_c");
+    }
+    cells
 }
 
 fn sink(r: &mut Random) -> Cells {
