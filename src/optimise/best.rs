@@ -131,12 +131,6 @@ impl<'c> Best<'c> {
         self.charge = charge;
     }
 
-    /// Offers a build that another search found.
-    pub(super) fn offer_found(&mut self, found: Found<'c>) {
-        let Found { key, build } = found;
-        self.offer(bill_of(&build), key.cost, key.heat, &mut || build.clone());
-    }
-
     fn last(&self) -> Option<(&Bill, &Found<'c>)> {
         self.by_bill
             .iter()
@@ -149,13 +143,4 @@ impl<'c> Best<'c> {
         builds.sort_by(|a, b| a.key.compare(&b.key, objective));
         builds
     }
-}
-
-/// Pieces of each part, per unit.
-fn bill_of(build: &Build) -> Bill {
-    let mut pieces: BTreeMap<PartId, u64> = BTreeMap::new();
-    for (part, qty) in build.uses() {
-        *pieces.entry(part.id).or_insert(0) += qty;
-    }
-    pieces.into_iter().collect()
 }

@@ -328,14 +328,18 @@ impl<'f, 'w, 's, 'a, 'c> Combine<'f, 'w, 's, 'a, 'c> {
         let mut used = Vec::new();
         let mut stocked = true;
         let mut fitted = Money(0);
+        let mut changes = 0;
         for (at, &place) in choice.iter().enumerate() {
             self.chosen[at] = place;
             let ready = &self.lists[at].ready[place];
+            changes += ready.changes;
             fitted = fitted + ready.fitted;
             stocked &= self.take(ready, &mut used);
         }
         let cost = self.priced(self.order.len(), &used) + fitted;
+        let near = self.set.question.near.as_ref().map_or(usize::MAX, |near| near.most);
         let holds = stocked
+            && changes <= near
             && self.set.site.holds(whole::cost(self.set.site.supply, cost))
             && (0..self.order.len()).all(|depth| self.carried(depth));
         let heat = if holds { self.offer(cost, &used) } else { None };

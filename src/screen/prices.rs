@@ -6,7 +6,7 @@ use crate::units::Money;
 /// Least unit prices for some rails. A break counts pieces over the whole supply, so a piece is never cheaper than at
 /// the most pieces that any build can hold, and no build holds more than the stock.
 #[derive(Debug, Clone)]
-pub struct FloorPrices {
+pub(super) struct FloorPrices {
     builds: u64,
     /// Rails that one section feeds.
     rails: u64,
@@ -18,7 +18,7 @@ impl FloorPrices {
     /// For a run of `builds` and a section with so many rails, with the most pieces that all other rails can use of each
     /// part.
     #[must_use]
-    pub fn new(builds: u64, rails: usize, elsewhere: Vec<u64>) -> FloorPrices {
+    pub(super) fn new(builds: u64, rails: usize, elsewhere: Vec<u64>) -> FloorPrices {
         FloorPrices {
             builds,
             rails: rails as u64,
@@ -29,7 +29,7 @@ impl FloorPrices {
     /// Least cost of `pieces` of a part in one unit. Devices are counted one by one, so each is priced as if all rails
     /// of the section took it; a sink as if it stood on the rectifier too.
     #[must_use]
-    pub fn cost(&self, part: &Part, pieces: u64) -> Money {
+    pub(super) fn cost(&self, part: &Part, pieces: u64) -> Money {
         let here = match part.slot {
             Slot::Sink => 1 + self.rails,
             Slot::Pass => self.rails,

@@ -26,7 +26,7 @@ impl Must {
 
 /// n equal capacitors.
 #[derive(Debug, Clone, Copy)]
-pub struct Bank<'c> {
+pub(super) struct Bank<'c> {
     /// Which.
     pub can: &'c Reservoir,
     /// How many.
@@ -35,7 +35,7 @@ pub struct Bank<'c> {
 
 /// The parts that one section and the devices behind it may use, each in catalogue order.
 #[derive(Debug, Clone)]
-pub struct Shelf<'c> {
+pub(super) struct Shelf<'c> {
     /// Places of the rails that the section feeds, rising.
     pub rails: Vec<usize>,
     /// Rectifier circuits that all of them allow.
@@ -57,7 +57,7 @@ pub struct Shelf<'c> {
 impl<'c> Shelf<'c> {
     /// Fills the shelf of a section that feeds these rails.
     #[must_use]
-    pub fn new(site: &Site<'c>, catalogue: &'c Catalogue, rails: &[usize], must: &Must) -> Shelf<'c> {
+    pub(super) fn new(site: &Site<'c>, catalogue: &'c Catalogue, rails: &[usize], must: &Must) -> Shelf<'c> {
         let supply = site.supply;
         let none = BTreeSet::new();
         let demanded = |rail: usize| must.in_rail.get(rail).unwrap_or(&none);

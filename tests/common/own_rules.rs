@@ -190,14 +190,11 @@ pub fn bill(build: &Build) -> Bill {
     bill
 }
 
-/// Whether a part is in a rail's section, which for either half of a dual pair has the shared rectifier and its sink.
+/// Whether a part is in a rail's section: either half of a dual pair has the shared rectifier, the positive one its sink.
 pub fn part_at(build: &Build, rail: usize, id: PartId) -> bool {
     let choice = &build.rails[rail];
     let section = &build.sections[choice.section];
-    let shared = section.pair.map(|other| &build.sections[other]);
-    let mut sinks = (section.rectifier_sink.into_iter())
-        .chain(shared.and_then(|s| s.rectifier_sink))
-        .chain(choice.sink);
+    let mut sinks = section.rectifier_sink.into_iter().chain(choice.sink);
     [
         build.transformers[section.transformer].part.part.id,
         section.rectifier.part.id,
