@@ -382,6 +382,6 @@ fn score(weights: crate::screen::Weights, cost: i64, heat_w: f64) -> f64 {
 
 /// Lower bound of a heat as it is compared, whatever the order in which it is added up.
 #[allow(clippy::cast_possible_truncation)]
-fn heat_bound(watts: f64) -> i64 {
+pub(super) fn heat_bound(watts: f64) -> i64 {
     (watts * 1e6 - 1e-3).round() as i64
 }

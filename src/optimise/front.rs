@@ -115,7 +115,7 @@ impl<'w, 'c> Window<'w, 'c> {
         let keys: Vec<(i64, i64)> = within.map(|f| (f.key.cost, f.key.heat)).collect();
         let between = keys.windows(2).map(|two| (two[1].0 - 1, two[0].1 - 1));
         let mut corners: Vec<(i64, i64)> = keys.iter().copied().chain(between).collect();
-        corners.sort_unstable();
+        corners.sort_by_key(|&(cost, heat)| (cost, std::cmp::Reverse(heat)));
         let scored = |(cost, heat)| (cost, heat, self.weights.score(cost, heat));
         self.corners = corners.into_iter().map(scored).collect();
         self.limit = self
@@ -132,10 +132,10 @@ impl<'c> Wanted<'c> for Window<'_, 'c> {
     }
 
     fn beyond(&self, cost: i64, heat: i64, score: f64) -> bool {
+        // As costs rise, heats fall.
         let from = self.corners.partition_point(|&(c, ..)| c < cost);
-        !self.corners[from..]
-            .iter()
-            .any(|&(_, h, s)| h >= heat && s + slack(s) >= score)
+        let to = self.corners.partition_point(|&(_, h, _)| h >= heat);
+        from >= to || !self.corners[from..to].iter().any(|&(.., s)| s + slack(s) >= score)
     }
 
     fn offer(&mut self, _bill: Bill, cost: i64, heat: i64, build: &mut dyn FnMut() -> Build<'c>) {
@@ -189,6 +189,7 @@ fn on_ground<'c>(ground: &Ground<'_, 'c>, question: &Question<'c>, curve: &mut C
         curve.offer(end);
     }
     let mut open = vec![(ends[0], ends[1])];
+    let mut search: Option<Search<'_, 'c>> = None;
     while let Some((left, right)) = open.pop() {
         if left.0 >= right.0 || left.1 <= right.1 {
             continue;
@@ -197,7 +198,13 @@ fn on_ground<'c>(ground: &Ground<'_, 'c>, question: &Question<'c>, curve: &mut C
         let heat = (right.0 - left.0) as f64 / (left.1 - right.1) as f64;
         let weights = Weights { cost: 1.0, heat };
         let line = weights.score(left.0, left.1);
-        let mut search = Search::start(ground, question, weights, true, counts);
+        let search = match &mut search {
+            Some(search) => {
+                search.go_by(weights, counts);
+                search
+            }
+            None => search.insert(Search::start(ground, question, weights, true, counts)),
+        };
         let mut wanted = Line {
             curve,
             weights,

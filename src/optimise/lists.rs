@@ -80,6 +80,8 @@ pub(super) struct View {
     most_changes: usize,
     /// Least score of those that hold, or of those that were not looked at.
     floor: f64,
+    /// Whether a feed may hold, and surely holds, beside the plan's other sections, sinks aside.
+    beside: BTreeMap<usize, (bool, bool)>,
     /// Score from which they are asked to be looked at.
     need: f64,
 }
@@ -127,12 +129,16 @@ impl View {
             let near = |feed: &&Feed| feed.changes <= self.most_changes;
             if let Some(feed) = ready.feed.as_ref().filter(near)
                 && !self.bettered(groups, outlet, flow, ready)
-                && feed.may_hold(site, groups, outlet)
-                && self.is_coolest(ready)
             {
-                self.held.push(self.seen);
-                if let Some(robust) = &mut self.robust {
-                    robust.push(outlet.others_va() > 0.0 && feed.surely_holds(site, groups, outlet));
+                let only_best = self.robust.is_some();
+                let (may, surely) = *self.beside.entry(feed.stack).or_insert_with(|| {
+                    let may = feed.may_hold(site, groups, outlet);
+                    let ask = may && only_best && outlet.others_va() > 0.0;
+                    (may, ask && feed.surely_holds(site, groups, outlet))
+                });
+                if may && self.is_coolest(ready) {
+                    self.held.push(self.seen);
+                    self.robust.iter_mut().for_each(|robust| robust.push(surely));
                 }
             }
             self.seen += 1;
@@ -216,6 +222,7 @@ impl<'a, 'c> Lists<'a, 'c> {
                     robust: only_best.then(Vec::new),
                     most_changes,
                     floor: f64::NEG_INFINITY,
+                    beside: BTreeMap::new(),
                     need: f64::NEG_INFINITY,
                 });
             }
@@ -255,12 +262,36 @@ impl<'a, 'c> Lists<'a, 'c> {
             weights,
             rails,
         };
-        for source in &mut lists.sources {
+        lists.begin();
+        lists
+    }
+
+    /// Starts again by other weights; what was solved stays solved. Heat counts in all of them or in none.
+    pub(super) fn go_by(&mut self, weights: Weights, counts: &mut Counts) {
+        self.weights = weights;
+        on_threads(self.flows.iter_mut().collect(), counts, |flow: &mut Flow<'a, 'c>, _| {
+            flow.ready.clear();
+            flow.walk.go_by(weights);
+        });
+        for source in &mut self.sources {
+            let plan = source.plan;
+            source.transformer.score = weights.score(plan.floor_cost, heat_floor(plan.core_w));
+        }
+        self.begin();
+    }
+
+    /// Forgets what the views have seen.
+    fn begin(&mut self) {
+        for source in &mut self.sources {
             for view in &mut source.views {
-                view.floor = lists.flows[view.flow].to_come();
+                view.held.clear();
+                view.seen = 0;
+                view.coolest.iter_mut().for_each(BTreeMap::clear);
+                view.robust.iter_mut().for_each(Vec::clear);
+                view.need = f64::NEG_INFINITY;
+                view.floor = self.flows[view.flow].to_come();
             }
         }
-        lists
     }
 
     /// By set of rails, the least score of plans that feed just them.

@@ -6,7 +6,7 @@
 
 use super::Question;
 use super::best::Wanted;
-use super::combine::{Combine, Kept, List, Run, Setting, Work, slack};
+use super::combine::{Combine, Kept, List, Run, Setting, Work, heat_bound, slack};
 use super::frame_build::Judge;
 use super::frames::{Frame, frames};
 use super::lists::{Lists, Ready, View};
@@ -85,6 +85,12 @@ impl<'g, 'c> Search<'g, 'c> {
             lists,
             least,
         }
+    }
+
+    /// Starts again by other weights; what was solved stays solved. Heat counts in all of them or in none.
+    pub(super) fn go_by(&mut self, weights: Weights, counts: &mut Counts) {
+        self.lists.go_by(weights, counts);
+        self.least = self.lists.least();
     }
 
     /// Least score of any build, as far as it is known.
@@ -258,6 +264,7 @@ impl<'g, 'c> Search<'g, 'c> {
             view.held.partition_point(|&place| ready[place].score <= own)
         });
         self.tightened(&mut lists, most);
+        sifted(&mut lists, work.wanted);
         if lists.iter().any(|list| list.kept.is_empty()) {
             return Run::Whole;
         }
@@ -360,6 +367,27 @@ impl<'g, 'c> Search<'g, 'c> {
             Answer::Infeasible => Said::NothingWithin,
             Answer::Undecided(_) => Said::Nothing,
         }
+    }
+}
+
+/// Drops what is of no interest even with the least of all other lists.
+fn sifted<'c>(lists: &mut [List<'_, 'c>], wanted: &dyn Wanted<'c>) {
+    let least = |list: &List| {
+        let heats = list.kept.iter().map(|k| list.ready[k.place].heat_w);
+        let cost = list.kept.iter().map(|k| k.floor).min().unwrap_or(0);
+        let score = list.kept.first().map_or(f64::INFINITY, |k| k.score);
+        (cost, heats.fold(f64::INFINITY, f64::min), score)
+    };
+    let each: Vec<(i64, f64, f64)> = lists.iter().map(least).collect();
+    let cost: i64 = each.iter().map(|l| l.0).sum();
+    let heat_w: f64 = each.iter().map(|l| l.1).sum();
+    let score: f64 = each.iter().map(|l| l.2).sum();
+    for (list, least) in lists.iter_mut().zip(each) {
+        let ready = list.ready;
+        list.kept.retain(|k| {
+            let heat = heat_bound(heat_w - least.1 + ready[k.place].heat_w);
+            !wanted.beyond(cost - least.0 + k.floor, heat, score - least.2 + k.score)
+        });
     }
 }
 

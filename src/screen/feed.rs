@@ -39,6 +39,8 @@ pub struct Feed<'c> {
     pub holds_alone: bool,
     /// In how many places it differs from the build to stay close to, those of the plan aside.
     pub changes: usize,
+    /// Tells apart what is alike but for sinks, among the feeds of one source.
+    pub stack: usize,
 }
 
 /// A feed's section beside others on its transformer.

@@ -2,7 +2,7 @@
 
 use std::cmp::Reverse;
 
-use super::{Choice, Entry, Score, Walk};
+use super::{Choice, Entry, Score, Stack, Walk};
 use crate::audit::{Corner, Raw, Stage};
 use crate::screen::Counts;
 use crate::screen::solved::Solved;
@@ -45,8 +45,24 @@ impl<'a, 'c> Walk<'a, 'c> {
         }
     }
 
-    /// Solves one section for some devices, and stacks what holds.
+    /// What comes of some devices behind a section: sinks that hold, or nothing.
     pub(super) fn try_devices(&mut self, section: usize, choice: &Choice, counts: &mut Counts) {
+        let known = self.sections[section].stacks.get(choice).copied();
+        let stack = known.unwrap_or_else(|| {
+            let stack = self.solve_devices(section, choice, counts).map(|stack| {
+                self.stacks.push(stack);
+                self.stacks.len() - 1
+            });
+            self.sections[section].stacks.insert(choice.clone(), stack);
+            stack
+        });
+        if let Some(stack) = stack {
+            self.push_sinks(stack, Choice::first(self.stacks[stack].sinks.len()));
+        }
+    }
+
+    /// Solves one section for some devices, and stacks what holds.
+    fn solve_devices(&mut self, section: usize, choice: &Choice, counts: &mut Counts) -> Option<Stack<'c>> {
         let mut solved = std::mem::take(&mut self.sections[section].solved);
         let open = &self.sections[section];
         let pair = &self.pairs[open.pair];
@@ -73,10 +89,6 @@ impl<'a, 'c> Walk<'a, 'c> {
             }
         }
         self.sections[section].solved = solved;
-        if let Some(stack) = stack {
-            let lists = stack.sinks.len();
-            self.stacks.push(stack);
-            self.push_sinks(self.stacks.len() - 1, Choice::first(lists));
-        }
+        stack
     }
 }

@@ -11,7 +11,7 @@ mod devices;
 mod stack;
 
 use std::cmp::Reverse;
-use std::collections::BinaryHeap;
+use std::collections::{BTreeMap, BinaryHeap};
 
 use crate::audit::{Corner, Raw, SectionHeat, Site, Stage, rectifier, reservoir, whole};
 use crate::catalogue::{Rectifier, Sink};
@@ -30,10 +30,28 @@ use choice::Choice;
 /// A rectifier with its banks once opened.
 struct Pair {
     rectifier: usize,
-    /// Cost with the cheapest devices, without a bank.
+    /// Cost with the cheapest devices and bank.
     base: i64,
-    /// Bank and lower bound of the score of all that comes of it, rising.
-    banks: Vec<(usize, f64)>,
+    /// Once opened: banks with least cost and heat of all that comes of them, by score.
+    banks: Option<Vec<Fitting>>,
+}
+
+/// A bank that may do behind a rectifier.
+#[derive(Debug, Clone, Copy)]
+struct Fitting {
+    bank: usize,
+    cost: i64,
+    heat: i64,
+    tried: Tried,
+}
+
+/// What came of a section.
+#[derive(Debug, Clone, Copy, PartialEq)]
+enum Tried {
+    NotYet,
+    Hopeless,
+    /// Its place.
+    Section(usize),
 }
 
 /// A section that some devices may stand behind.
@@ -48,6 +66,8 @@ struct Section {
     devices: Vec<Vec<usize>>,
     /// Its steady states by load.
     solved: Vec<Solved>,
+    /// By choice of devices, the stack that came of it.
+    stacks: BTreeMap<Choice, Option<usize>>,
 }
 
 /// A solved section with its devices: only sinks are open.
@@ -157,16 +177,29 @@ impl<'a, 'c> Walk<'a, 'c> {
             {
                 continue;
             }
-            let base = walk.rectifier_cost(rectifier) + devices;
-            let score = weights.score(base + cheapest_bank, 0);
-            walk.heap.push(Reverse((Score(score), Entry::Pair(walk.pairs.len()))));
             walk.pairs.push(Pair {
                 rectifier: r,
-                base,
-                banks: Vec::new(),
+                base: walk.rectifier_cost(rectifier) + devices + cheapest_bank,
+                banks: None,
             });
         }
+        walk.go_by(weights);
         walk
+    }
+
+    /// Starts again by other weights; what was solved stays solved. Heat counts in all of them or in none.
+    pub fn go_by(&mut self, weights: Weights) {
+        self.weights = weights;
+        self.heap.clear();
+        for place in 0..self.pairs.len() {
+            if self.pairs[place].banks.is_some() {
+                self.sort_banks(place);
+                self.push_bank(place, 0);
+            } else {
+                let score = weights.score(self.pairs[place].base, 0);
+                self.heap.push(Reverse((Score(score), Entry::Pair(place))));
+            }
+        }
     }
 
     /// Lower bound of the score of every feed to come; `None`: no more will come.
@@ -187,7 +220,7 @@ impl<'a, 'c> Walk<'a, 'c> {
                 Entry::Pair(pair) => self.open(pair),
                 Entry::Bank(pair, place) => {
                     self.push_bank(pair, place + 1);
-                    self.try_section(pair, place, counts);
+                    self.try_bank(pair, place, counts);
                 }
                 Entry::Devices(section, choice) => {
                     self.push_more_devices(section, &choice);
@@ -284,22 +317,63 @@ impl<'a, 'c> Walk<'a, 'c> {
             return;
         }
         let heat = (self.weights.heat > 0.0).then(|| HeatBound::new(&high, esr_ohm, self.rails_w()));
-        let mut banks: Vec<(usize, f64)> = (banks_that_do.into_iter())
+        let cheapest = group.banks.first().map_or(0, |&(_, price)| price);
+        let banks = (banks_that_do.into_iter())
             .map(|(b, price)| {
                 let bank = group.shelf.banks[b];
                 let bank_f = site.can_f(bank.can, Corner::High) * f64::from(bank.cans);
                 let heat_w = heat.as_ref().map_or(0.0, |bound| bound.least_w(bank_f));
-                (b, self.weights.score(pair.base + price, heat_floor(heat_w)))
+                Fitting {
+                    bank: b,
+                    cost: pair.base - cheapest + price,
+                    heat: heat_floor(heat_w),
+                    tried: Tried::NotYet,
+                }
             })
             .collect();
-        banks.sort_by(|a, b| a.1.total_cmp(&b.1).then(a.0.cmp(&b.0)));
-        self.pairs[place].banks = banks;
+        self.pairs[place].banks = Some(banks);
+        self.sort_banks(place);
         self.push_bank(place, 0);
     }
 
+    fn bank_score(&self, fitting: &Fitting) -> f64 {
+        self.weights.score(fitting.cost, fitting.heat)
+    }
+
+    fn sort_banks(&mut self, pair: usize) {
+        let mut banks = self.pairs[pair].banks.take().unwrap_or_default();
+        banks.sort_by(|a, b| {
+            let (x, y) = (self.bank_score(a), self.bank_score(b));
+            x.total_cmp(&y).then(a.bank.cmp(&b.bank))
+        });
+        self.pairs[pair].banks = Some(banks);
+    }
+
+    fn fitting(&self, pair: usize, place: usize) -> Option<Fitting> {
+        self.pairs[pair].banks.as_ref()?.get(place).copied()
+    }
+
     fn push_bank(&mut self, pair: usize, place: usize) {
-        if let Some(&(_, score)) = self.pairs[pair].banks.get(place) {
+        if let Some(fitting) = self.fitting(pair, place) {
+            let score = self.bank_score(&fitting);
             self.heap.push(Reverse((Score(score), Entry::Bank(pair, place))));
+        }
+    }
+
+    /// What comes of a bank: a section that devices may stand behind, or nothing.
+    fn try_bank(&mut self, pair: usize, place: usize, counts: &mut Counts) {
+        let Some(fitting) = self.fitting(pair, place) else { return };
+        let tried = match fitting.tried {
+            Tried::NotYet => self
+                .try_section(pair, fitting.bank, counts)
+                .map_or(Tried::Hopeless, Tried::Section),
+            known => known,
+        };
+        if let Some(banks) = &mut self.pairs[pair].banks {
+            banks[place].tried = tried;
+        }
+        if let Tried::Section(section) = tried {
+            self.push_devices(section, Choice::first(self.group.shelf.rails.len()));
         }
     }
 
@@ -313,27 +387,20 @@ impl<'a, 'c> Walk<'a, 'c> {
         Some(section.sum_w() + high.mean_v() * load_a - self.rails_w())
     }
 
-    /// Solves one section under the least load of its devices; if there is hope, its devices come into question, the
-    /// cheapest first.
-    fn try_section(&mut self, pair: usize, place: usize, counts: &mut Counts) {
+    /// Solves one section under the least load of its devices; its place if there is hope.
+    fn try_section(&mut self, pair: usize, bank: usize, counts: &mut Counts) -> Option<usize> {
         counts.sections += 1;
-        let (bank, _) = self.pairs[pair].banks[place];
         let can = self.group.shelf.banks[bank];
         let raw = self.raw(&self.pairs[pair], can);
         if !self.site.holds(rectifier::surge(self.site, &raw)) {
-            return;
+            return None;
         }
         let mut solved = Solved::new(self.source.load_a);
-        let Some(devices) = self.hopeful(&raw, &mut solved, counts) else {
-            return;
-        };
+        let devices = self.hopeful(&raw, &mut solved, counts)?;
         let rectifier = self.group.shelf.rectifiers[self.pairs[pair].rectifier];
         let cost = self.rectifier_cost(rectifier) + self.group.prices.cost(&can.can.part, u64::from(can.cans)).0;
         let heat = if self.weights.heat > 0.0 {
-            match self.least_heat_w(&raw, &mut solved, counts) {
-                Some(heat_w) => heat_floor(heat_w),
-                None => return,
-            }
+            heat_floor(self.least_heat_w(&raw, &mut solved, counts)?)
         } else {
             0
         };
@@ -344,7 +411,8 @@ impl<'a, 'c> Walk<'a, 'c> {
             heat,
             devices,
             solved: vec![solved],
+            stacks: BTreeMap::new(),
         });
-        self.push_devices(self.sections.len() - 1, Choice::first(self.group.shelf.rails.len()));
+        Some(self.sections.len() - 1)
     }
 }

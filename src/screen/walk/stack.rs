@@ -58,6 +58,7 @@ impl<'c> Walk<'_, 'c> {
         }
         let near = self.apart.as_ref().is_none_or(|apart| feed.changes <= apart.most);
         feed.floor_cost = feed.floor_cost + cost;
+        feed.stack = stack;
         let stocked = |(part, pieces)| self.site.holds(whole::stock(self.site.supply, part, pieces));
         (must && near && feed.lines().into_iter().all(stocked)).then_some(feed)
     }
@@ -126,6 +127,7 @@ impl<'c> Walk<'_, 'c> {
                 holds_alone: losses.alone_holds,
                 floor_cost: Money(cost) + self.group.prices.cost(&bank.can.part, u64::from(bank.cans)),
                 changes,
+                stack: 0,
             },
             sinks,
         })
