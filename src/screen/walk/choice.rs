@@ -1,14 +1,16 @@
 //! Owns one choice from each of several lists, and how all choices are reached from the first, each once.
 
-/// Places in the lists. Every choice but the first has one parent: the same with its last place that is not 0 one
+use smallvec::{SmallVec, smallvec};
+
+/// Places in the lists, in place for the few rails that share a section: millions of them pass through a heap. Every choice but the first has one parent: the same with its last place that is not 0 one
 /// lower. So where lists rise, no choice comes before a better one.
 #[derive(Debug, Clone, PartialEq, Eq, PartialOrd, Ord)]
-pub(super) struct Choice(pub(super) Vec<u16>);
+pub(super) struct Choice(SmallVec<[u32; 5]>);
 
 impl Choice {
     /// The first of each of so many lists.
     pub(super) fn first(lists: usize) -> Choice {
-        Choice(vec![0; lists])
+        Choice(smallvec![0; lists])
     }
 
     /// The choices that come of this one, in lists of these lengths.
@@ -17,13 +19,13 @@ impl Choice {
         (last..self.0.len()).filter_map(move |list| {
             let mut child = self.clone();
             child.0[list] += 1;
-            (usize::from(child.0[list]) < lengths(list)).then_some(child)
+            ((child.0[list] as usize) < lengths(list)).then_some(child)
         })
     }
 
     /// Its places by list.
     pub(super) fn places(&self) -> impl Iterator<Item = usize> {
-        self.0.iter().map(|&place| usize::from(place))
+        self.0.iter().map(|&place| place as usize)
     }
 }
 

@@ -362,7 +362,9 @@ impl<'a, 'c> Walk<'a, 'c> {
 
     /// What comes of a bank: a section that devices may stand behind, or nothing.
     fn try_bank(&mut self, pair: usize, place: usize, counts: &mut Counts) {
-        let Some(fitting) = self.fitting(pair, place) else { return };
+        let Some(fitting) = self.fitting(pair, place) else {
+            return;
+        };
         let tried = match fitting.tried {
             Tried::NotYet => self
                 .try_section(pair, fitting.bank, counts)
