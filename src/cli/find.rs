@@ -15,7 +15,7 @@ use crate::optimise::{Outcome, Proof, Question, Reasons, optimise, rejections};
 use crate::report::none::NoBuild;
 use crate::report::{ProofLine, Report, csv, json, table};
 use crate::screen::{Counts, Objective, Stop};
-use crate::supply::{Rail, Supply, read};
+use crate::supply::{Rail, Supply};
 
 #[derive(ValueEnum, Debug, Clone, Copy)]
 enum By {
@@ -30,6 +30,8 @@ enum By {
 struct Asked {
     /// Supply file
     supply: PathBuf,
+    #[command(flatten)]
+    settings: input::Settings,
     /// What is to be least
     #[arg(long, value_enum, default_value_t = By::Cost)]
     by: By,
@@ -93,7 +95,7 @@ impl Asked {
     /// One build, or (`top`) a ranking.
     fn run(&self, common: &Common, top: Option<usize>, save: Option<&PathBuf>) -> Result<Answer, Failure> {
         let begun = Instant::now();
-        let supply = read(&self.supply)?;
+        let supply = self.settings.read(&self.supply)?;
         let loaded = input::catalogue(&supply, &self.supply, self.catalogue.as_deref())?;
         let question = self.question(&supply, &loaded.catalogue, top.unwrap_or(1))?;
         let read_in = begun.elapsed();
