@@ -2,7 +2,7 @@
 
 use super::ladder::Ladder;
 use crate::catalogue::{Catalogue, Part, PartId};
-use crate::supply::{Supply, changed, stated};
+use crate::supply::{self, Supply, stated};
 use crate::units::number_and_unit;
 
 /// Which way a requirement gives.
@@ -20,6 +20,8 @@ pub(super) enum Shape {
     Straight,
     /// Mostly so; but cooler copper and a lighter load raise currents and voltages a little.
     Wavy,
+    /// As straight, but its far end takes long to solve: not one to try with others.
+    Slow,
     /// Fewer units need less stock, and each of them costs more.
     Run,
 }
@@ -42,7 +44,7 @@ const ROWS: &[Row] = &[
     ("caps.cost", Up, Shape::Straight),
     ("caps.heat", Up, Shape::Straight),
     ("caps.height", Up, Shape::Straight),
-    ("caps.cans", Up, Shape::Straight),
+    ("caps.cans", Up, Shape::Slow),
     ("builds", Down, Shape::Run),
     ("rail.*.ripple", Up, Shape::Straight),
     ("rail.*.current", Down, Shape::Wavy),
@@ -158,9 +160,10 @@ impl Lever {
         }
     }
 
-    /// The number at a place, in the unit of the supply file.
-    pub(super) fn value(&self, place: i64) -> f64 {
-        self.ladder.value(self.rung(place))
+    /// The number at a place of a whole-numbered lever.
+    #[allow(clippy::cast_possible_truncation, clippy::cast_sign_loss)] // whole, and not below zero
+    pub(super) fn count(&self, place: i64) -> u64 {
+        self.ladder.value(self.rung(place)) as u64
     }
 
     /// The nearest place at which a whole number is at most `most`.
@@ -174,13 +177,19 @@ impl Lever {
         self.first + if self.up { out } else { -out }
     }
 
-    /// The supply with this key at a place; `None` where the reader does not take it, and for stock.
+    /// The supply with this lever at a place; `None` where the reader does not take it.
     pub(super) fn supply(&self, supply: &Supply, place: i64) -> Option<Supply> {
-        let Moves::Key(key) = &self.moves else {
-            return None;
-        };
-        changed(supply, &[format!("{key}={}", self.text(place))]).ok()
+        changed(supply, &[(self, place)])
     }
+}
+
+/// The supply with levers at places, but for their stocks; `None` where the reader does not take one of them.
+pub(super) fn changed(supply: &Supply, moved: &[(&Lever, i64)]) -> Option<Supply> {
+    let setting = |(lever, place): &(&Lever, i64)| match &lever.moves {
+        Moves::Key(key) => Some(format!("{key}={}", lever.text(*place))),
+        Moves::Stock(_) => None,
+    };
+    supply::changed(supply, &moved.iter().filter_map(setting).collect::<Vec<_>>()).ok()
 }
 
 /// A catalogue with other stocks.

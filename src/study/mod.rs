@@ -8,6 +8,7 @@ mod lever;
 mod prices;
 mod relax;
 mod room;
+mod which;
 mod wish;
 
 pub use prices::{Price, Prices, prices};

@@ -2,7 +2,8 @@
 //! much that one is better.
 
 use super::Relaxation;
-use super::wish::{Nearest, Wish};
+use super::which::Helping;
+use super::wish::Wish;
 use crate::optimise::{Disagreement, Question};
 
 /// What one requirement costs.
@@ -32,7 +33,7 @@ pub fn prices(question: &Question, best: i64) -> Result<Prices, Disagreement> {
         question,
         most: Some(best - 1),
     };
-    let Nearest { levers, complete } = wish.nearest()?;
+    let Helping { levers, complete } = wish.helping()?;
     let list = levers.iter().map(|(lever, solved)| Price {
         relaxation: Relaxation {
             requirement: lever.requirement.clone(),

@@ -1,6 +1,7 @@
 //! Owns what would have to give so that a build passes: for each requirement alone the least that it must be relaxed.
 
-use super::wish::{Nearest, Wish};
+use super::which::Helping;
+use super::wish::Wish;
 use crate::optimise::{Disagreement, Question};
 
 /// One requirement, relaxed alone.
@@ -29,7 +30,7 @@ pub struct Relaxed {
 /// # Errors
 /// When search and audit disagree: a bug to report.
 pub fn relax(question: &Question) -> Result<Relaxed, Disagreement> {
-    let Nearest { levers, complete } = Wish { question, most: None }.nearest()?;
+    let Helping { levers, complete } = Wish { question, most: None }.helping()?;
     let list = levers.iter().map(|(lever, solved)| Relaxation {
         requirement: lever.requirement.clone(),
         from: lever.from.clone(),
