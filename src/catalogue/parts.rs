@@ -425,6 +425,15 @@ impl Catalogue {
             .chain(self.sinks.iter().map(|x| &x.part))
     }
 
+    /// All parts in the order of their ids, to be changed.
+    pub fn parts_mut(&mut self) -> impl Iterator<Item = &mut Part> {
+        (self.transformers.iter_mut().map(|x| &mut x.part))
+            .chain(self.rectifiers.iter_mut().map(|x| &mut x.part))
+            .chain(self.reservoirs.iter_mut().map(|x| &mut x.part))
+            .chain(self.pass_devices.iter_mut().map(|x| &mut x.part))
+            .chain(self.sinks.iter_mut().map(|x| &mut x.part))
+    }
+
     /// The part of that name.
     #[must_use]
     pub fn find(&self, name: &str) -> Option<&Part> {

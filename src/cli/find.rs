@@ -13,9 +13,11 @@ use crate::build::device_serves;
 use crate::catalogue::{Catalogue, Loaded};
 use crate::optimise::{Outcome, Proof, Question, Reasons, optimise, rejections};
 use crate::report::none::NoBuild;
-use crate::report::{ProofLine, Report, csv, json, table};
+use crate::report::{ProofLine, Report, csv, json, price_lines, table};
 use crate::screen::{Counts, Objective, Stop};
-use crate::supply::{Rail, Supply, read};
+use crate::study::{self, Relaxed, Room, Share};
+use crate::supply::{Rail, Supply};
+use crate::units::{Dimension, Measure, Money, Range};
 
 #[derive(ValueEnum, Debug, Clone, Copy)]
 enum By {
@@ -30,6 +32,8 @@ enum By {
 struct Asked {
     /// Supply file
     supply: PathBuf,
+    #[command(flatten)]
+    settings: input::Settings,
     /// What is to be least
     #[arg(long, value_enum, default_value_t = By::Cost)]
     by: By,
@@ -54,6 +58,12 @@ pub(super) struct Pick {
     /// Save the build, to audit it or to redo it later
     #[arg(long, value_name = "FILE")]
     save: Option<PathBuf>,
+    /// Say what each requirement costs: the least useful relaxation of each one and what that saves
+    #[arg(long)]
+    prices: bool,
+    /// Of all builds within this share of the best ("2%") the one whose tightest limit has the most room
+    #[arg(long, value_name = "SHARE", value_parser = share, conflicts_with = "prices")]
+    room: Option<Share>,
 }
 
 #[derive(Args, Debug)]
@@ -77,69 +87,64 @@ fn seconds(text: &str) -> Result<f64, String> {
     }
 }
 
+/// "2%", "2 %".
+fn share(text: &str) -> Result<Share, String> {
+    let measure = Measure::new(Dimension::Percentage, "%", Range::from(0.0).to(100.0));
+    let share = measure.written(text).and_then(Share::new);
+    share.map_err(|wrong| format!("{}; {}", wrong.problem, wrong.allowed))
+}
+
+/// What is wanted besides the best.
+#[derive(Default)]
+struct Wanted<'a> {
+    /// A ranking of so many.
+    top: Option<usize>,
+    save: Option<&'a PathBuf>,
+    prices: bool,
+    room: Option<Share>,
+}
+
 impl Pick {
     pub(super) fn run(&self, common: &Common) -> Result<Answer, Failure> {
-        self.asked.run(common, None, self.save.as_ref())
+        let wanted = Wanted {
+            top: None,
+            save: self.save.as_ref(),
+            prices: self.prices,
+            room: self.room,
+        };
+        self.asked.run(common, &wanted)
     }
 }
 
 impl Rank {
     pub(super) fn run(&self, common: &Common) -> Result<Answer, Failure> {
-        self.asked.run(common, Some(self.top as usize), None)
+        let wanted = Wanted {
+            top: Some(self.top as usize),
+            ..Wanted::default()
+        };
+        self.asked.run(common, &wanted)
     }
 }
 
 impl Asked {
-    /// One build, or (`top`) a ranking.
-    fn run(&self, common: &Common, top: Option<usize>, save: Option<&PathBuf>) -> Result<Answer, Failure> {
+    /// One build, or a ranking.
+    fn run(&self, common: &Common, wanted: &Wanted) -> Result<Answer, Failure> {
         let begun = Instant::now();
-        let supply = read(&self.supply)?;
+        let supply = self.settings.read(&self.supply)?;
         let loaded = input::catalogue(&supply, &self.supply, self.catalogue.as_deref())?;
-        let question = self.question(&supply, &loaded.catalogue, top.unwrap_or(1))?;
+        let question = self.question(&supply, &loaded.catalogue, wanted.top.unwrap_or(1))?;
         let read_in = begun.elapsed();
-        let outcome = optimise(&question).map_err(Failure::Bug)?;
-        let work = work(&outcome.counts, read_in, begun.elapsed());
-        let proved = outcome.proof == Proof::Proved;
+        let mut outcome = optimise(&question).map_err(Failure::Bug)?;
         let answer = if outcome.builds.is_empty() {
-            let reasons = if proved {
-                rejections(&question).map_err(Failure::Bug)?
-            } else {
-                Reasons::default()
-            };
-            let none = NoBuild {
-                proof: ProofLine::new(&outcome, None, question.objective),
-                reasons,
-                unserved: unserved(&question),
-                currency: loaded.catalogue.currency.clone(),
-            };
-            let text = match common.format {
-                Format::Table => none.table(page(common)),
-                Format::Json => json::text(&none.json()),
-                Format::Csv => none.csv(),
-            };
-            Answer::new(text, if proved { 1 } else { 3 })
+            no_build(&question, &outcome, common)?
         } else {
-            let reports = reports(&question, &loaded, &outcome);
-            let first = &reports[0];
-            let text = match (common.format, top.is_some()) {
-                (Format::Table, false) => table::build(first, page(common)),
-                (Format::Json, false) => json::text(&json::build(first)),
-                (Format::Csv, false) => csv::bill(first),
-                (Format::Table, true) => table::rank(&reports, page(common)),
-                (Format::Json, true) => json::text(&json::rank(&reports)),
-                (Format::Csv, true) => csv::rank(&reports),
-            };
-            let save = save.map(|path| (path.clone(), json::text(&json::build(first))));
-            // A CSV file has no room for cautions, but no build goes without them.
-            let cautions = if common.format == Format::Csv {
-                first.cautions.clone()
-            } else {
-                Vec::new()
-            };
-            Answer::new(text, if proved { 0 } else { 3 })
-                .with_save(save)
-                .with_talk(cautions)
+            let mut reports = reports(&question, &loaded, &outcome);
+            let more = more(&question, &mut outcome, wanted, &mut reports)?;
+            builds(&reports, wanted, common)
+                .with_code(if outcome.proof == Proof::Proved { more.code } else { 3 })
+                .with_talk(more.talk)
         };
+        let work = work(&outcome.counts, read_in, begun.elapsed());
         Ok(answer.with_talk(input::warnings(&loaded)).with_work(work))
     }
 
@@ -172,6 +177,117 @@ impl Asked {
             ..Question::new(supply, catalogue, objective)
         })
     }
+}
+
+/// What keeps the parts out, and what would have to give.
+fn no_build(question: &Question, outcome: &Outcome, common: &Common) -> Result<Answer, Failure> {
+    let proved = outcome.proof == Proof::Proved;
+    let (reasons, relaxed) = if proved {
+        let reasons = rejections(question).map_err(Failure::Bug)?;
+        (reasons, study::relax(question).map_err(Failure::Bug)?)
+    } else {
+        (Reasons::default(), Relaxed::default())
+    };
+    let none = NoBuild {
+        proof: ProofLine::new(outcome, None, question.objective),
+        reasons,
+        relaxed,
+        unserved: unserved(question),
+        currency: question.catalogue.currency.clone(),
+    };
+    let (text, talk) = match common.format {
+        Format::Table => (none.table(page(common)), Vec::new()),
+        Format::Json => (json::text(&none.json()), Vec::new()),
+        // The CSV table is of parts; what would have to give is said beside it.
+        Format::Csv => (none.csv(), none.talk()),
+    };
+    Ok(Answer::new(text, if proved { 1 } else { 3 }).with_talk(talk))
+}
+
+/// The pages of builds.
+fn builds(reports: &[Report], wanted: &Wanted, common: &Common) -> Answer {
+    let first = &reports[0];
+    let text = match (common.format, wanted.top.is_some()) {
+        (Format::Table, false) => table::build(first, page(common)),
+        (Format::Json, false) => json::text(&json::build(first)),
+        (Format::Csv, false) => csv::bill(first),
+        (Format::Table, true) => table::rank(reports, page(common)),
+        (Format::Json, true) => json::text(&json::rank(reports)),
+        (Format::Csv, true) => csv::rank(reports),
+    };
+    let save = (wanted.save).map(|path| (path.clone(), json::text(&json::build(first))));
+    // A CSV file has no room for cautions and prices, but no build goes without them.
+    let talk = if common.format == Format::Csv {
+        [price_lines(first), first.cautions.clone()].concat()
+    } else {
+        Vec::new()
+    };
+    Answer::new(text, 0).with_save(save).with_talk(talk)
+}
+
+/// How the rest of the answer came out.
+#[derive(Default)]
+struct More {
+    code: u8,
+    talk: Vec<String>,
+}
+
+/// Adds prices to the best build, or puts the roomiest one in its place.
+fn more<'c>(
+    question: &Question<'c>,
+    outcome: &mut Outcome<'c>,
+    wanted: &Wanted,
+    reports: &mut [Report<'c>],
+) -> Result<More, Failure> {
+    let (Some(best), Some(report)) = (outcome.builds.first(), reports.first_mut()) else {
+        return Ok(More::default());
+    };
+    let stopped = |what: &str| More {
+        code: 3,
+        talk: vec![format!("stopped before {what}")],
+    };
+    if !wanted.prices && wanted.room.is_none() {
+        return Ok(More::default());
+    }
+    if outcome.proof != Proof::Proved {
+        return Ok(stopped("the best build was proved, which the rest is measured by"));
+    }
+    if let Some(share) = wanted.room {
+        let room = study::roomiest(question, best.clone(), share).map_err(Failure::Bug)?;
+        outcome.counts.add(&room.counts);
+        *report = roomy(question, report, &room, share);
+        return Ok(More {
+            code: if room.proved { 0 } else { 3 },
+            talk: Vec::new(),
+        });
+    }
+    let prices = study::prices(question, best.key.objective(question.objective)).map_err(Failure::Bug)?;
+    report.prices = Some(prices.list);
+    Ok(if prices.complete {
+        More::default()
+    } else {
+        stopped("every requirement was tried: another one may cost something too")
+    })
+}
+
+/// The report on the roomiest build instead of the best one.
+fn roomy<'c>(question: &Question<'c>, best: &Report<'c>, room: &Room<'c>, share: Share) -> Report<'c> {
+    let value = |objective: i64| Money(objective).value();
+    let bound = best.proof.map_or(0.0, |(_, proof)| proof.bound);
+    let proof = ProofLine {
+        status: if room.proved { "proved" } else { "best found" },
+        value: Some(value(room.found.key.objective(question.objective))),
+        bound,
+    };
+    let mut report = Report::new(
+        question.supply,
+        room.found.build.clone(),
+        Some((question.objective, proof)),
+        best.currency.clone(),
+        best.catalogue.clone(),
+    );
+    report.room = Some((share, bound));
+    report
 }
 
 /// Rails that no device serves by the rules of assembly.

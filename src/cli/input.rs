@@ -2,11 +2,34 @@
 
 use std::path::{Path, PathBuf};
 
+use clap::Args;
+
 use super::{Failure, call_fault};
 use crate::catalogue::{Catalogue, Loaded, PartId, load};
 use crate::fault::Fault;
 use crate::suggest::did_you_mean;
-use crate::supply::Supply;
+use crate::supply::{Supply, changed, read_with};
+
+/// `--set`, for every command that reads a supply.
+#[derive(Args, Debug)]
+pub(super) struct Settings {
+    /// A key of the supply and the value it shall have, as ambient.high="43 degC" or rail.NAME.ripple="6 mV" (repeatable)
+    #[arg(long = "set", value_name = "KEY=VALUE")]
+    settings: Vec<String>,
+}
+
+impl Settings {
+    /// A supply file with the settings in it.
+    pub(super) fn read(&self, file: &Path) -> Result<Supply, Failure> {
+        Ok(read_with(file, &self.settings)?)
+    }
+
+    /// A supply read before, with the settings in it.
+    #[allow(dead_code)] // for the commands that start from a saved build
+    pub(super) fn change(&self, supply: &Supply) -> Result<Supply, Failure> {
+        Ok(changed(supply, &self.settings)?)
+    }
+}
 
 /// The catalogue of a supply: the one named on the command line, else the one in the file, relative to it.
 pub(super) fn catalogue(supply: &Supply, file: &Path, flag: Option<&Path>) -> Result<Loaded, Failure> {

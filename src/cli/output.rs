@@ -33,6 +33,11 @@ impl Answer {
         }
     }
 
+    pub(super) fn with_code(mut self, code: u8) -> Answer {
+        self.code = code;
+        self
+    }
+
     pub(super) fn with_talk(mut self, talk: impl IntoIterator<Item = String>) -> Answer {
         self.talk.extend(talk);
         self

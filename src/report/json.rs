@@ -2,7 +2,7 @@
 
 use serde_json::{Map, Value, json};
 
-use super::Report;
+use super::{Report, relaxed};
 use crate::audit::{Limit, Margin};
 use crate::catalogue::{Part, Sink};
 use crate::fault::Fault;
@@ -71,7 +71,7 @@ pub fn build(report: &Report) -> Value {
         .iter()
         .map(|l| (l.part.name.clone(), cells(l.part)))
         .collect();
-    json!({
+    let mut document = json!({
         "schema": crate::saved::SCHEMA,
         "supply": supply.content,
         "catalogue": report.catalogue,
@@ -90,7 +90,11 @@ pub fn build(report: &Report) -> Value {
         "margins": margins(report),
         "cautions": report.cautions,
         "parts": parts,
-    })
+    });
+    if let Some(object) = document.as_object_mut() {
+        object.extend(relaxed::of_build(report));
+    }
+    document
 }
 
 fn cells(part: &Part) -> Value {
@@ -214,13 +218,13 @@ pub fn vet(faults: &[Fault], warnings: &[Fault], counts: &[(&'static str, usize)
 
 /// binrail.none/1 for a search that ended without a build.
 #[must_use]
-pub fn none(status: &str, bound: Option<f64>, rejected: &[Value], joint: &[String]) -> Value {
+pub fn none(status: &str, bound: Option<f64>, rejected: &[Value], joint: &[String], relax: &[Value]) -> Value {
     json!({
         "schema": "binrail.none/1",
         "proof": {"status": status, "value": null, "bound": bound},
         "rejected": rejected,
         "joint": joint,
-        "relax": [],
+        "relax": relax,
     })
 }
 

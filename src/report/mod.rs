@@ -3,17 +3,21 @@
 pub mod csv;
 pub mod json;
 pub mod none;
+mod relaxed;
 pub mod schema;
 pub mod table;
 mod text;
+mod verdict;
 mod wiring;
 
 use crate::audit::{Audit, Margin, audit, cautions};
 use crate::build::{Build, Line};
 use crate::optimise::{Found, Outcome, Proof};
 use crate::screen::Objective;
+use crate::study::{Price, Share};
 use crate::supply::Supply;
 
+pub use relaxed::price_lines;
 pub use text::printable;
 
 /// How far the proof of one build goes, in the objective's own unit (currency or watts).
@@ -62,6 +66,10 @@ pub struct Report<'c> {
     pub lines: Vec<Line<'c>>,
     /// What was minimised and how far it is proved; `None` for an audited build.
     pub proof: Option<(Objective, ProofLine)>,
+    /// The share of the best within which this is the roomiest build, and the best objective (currency or watts).
+    pub room: Option<(Share, f64)>,
+    /// What each requirement costs, where that was asked.
+    pub prices: Option<Vec<Price>>,
     /// What a person must know.
     pub cautions: Vec<String>,
     /// Currency of all prices.
@@ -87,6 +95,8 @@ impl<'c> Report<'c> {
             supply,
             build,
             proof,
+            room: None,
+            prices: None,
             currency,
             catalogue,
         }

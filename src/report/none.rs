@@ -4,8 +4,10 @@ use serde_json::{Value, json};
 
 use super::ProofLine;
 use super::json::{none, unit_of};
+use super::relaxed::relaxation;
 use super::table::{Page, none as none_page};
 use crate::optimise::{Joint, Reasons};
+use crate::study::{Relaxation, Relaxed};
 
 /// No build, and why.
 #[derive(Debug, Clone)]
@@ -14,6 +16,8 @@ pub struct NoBuild {
     pub proof: ProofLine,
     /// Why nothing passes; empty when the search was stopped.
     pub reasons: Reasons,
+    /// What would have to give; empty when the search was stopped.
+    pub relaxed: Relaxed,
     /// Rails that no device of the catalogue serves at all.
     pub unserved: Vec<String>,
     /// Currency of all prices.
@@ -38,7 +42,14 @@ impl NoBuild {
                 })
             })
             .collect();
-        none(self.proof.status, Some(self.proof.bound), &rejected, &self.joint())
+        let relax: Vec<Value> = self.relaxed.list.iter().map(relaxation).collect();
+        none(
+            self.proof.status,
+            Some(self.proof.bound),
+            &rejected,
+            &self.joint(),
+            &relax,
+        )
     }
 
     /// As a page.
@@ -64,6 +75,13 @@ impl NoBuild {
                 ]
             }),
         )
+    }
+
+    /// What the CSV form has no room for: one line for each requirement that would have to give.
+    #[must_use]
+    pub fn talk(&self) -> Vec<String> {
+        let line = |r: &Relaxation| format!("it would pass with {} {} -> {}", r.requirement, r.from, r.to);
+        self.relaxed.list.iter().map(line).collect()
     }
 
     /// The limits that cannot hold together, stock with its part.

@@ -3,15 +3,15 @@
 use comfy_table::presets::NOTHING;
 use comfy_table::{CellAlignment, ColumnConstraint, ContentArrangement, ContentLineStyle, LineStyle, Table};
 
-use super::Report;
+use super::{Report, relaxed};
 use super::json::{unit_of, wave_figures};
 use super::none::NoBuild;
 use super::text::{digits, engineering, printable};
+use super::verdict::verdict;
 use super::wiring::wiring;
 use crate::build::Line;
 use crate::fault::Fault;
 use crate::physics::raw_section::Waveform;
-use crate::screen::Objective;
 
 /// How a page is set.
 #[derive(Debug, Clone, Copy, Default)]
@@ -36,6 +36,7 @@ pub fn build(report: &Report, page: Page) -> String {
     out.push_str(&wiring(report, page));
     out.push_str(&format!("\nBill of materials, run of {}\n", report.supply.builds));
     out.push_str(&bill(report, page));
+    out.push_str(&relaxed::prices(report, page));
     out + &evidence(report, page)
 }
 
@@ -143,7 +144,7 @@ pub(super) fn none(answer: &NoBuild, page: Page) -> String {
     if !answer.reasons.complete {
         out.push_str("\nStopped before every part was looked at: more may fail.\n");
     }
-    out
+    out + &relaxed::relaxed(&answer.relaxed, page)
 }
 
 /// The figures of `wave`.
@@ -186,62 +187,6 @@ pub fn vet(faults: &[Fault], warnings: &[Fault], counts: &[(&'static str, usize)
         counted(warnings.len() as u64, "warning"),
         rows.join(", ")
     ));
-    out
-}
-
-fn verdict(report: &Report, page: Page) -> String {
-    let currency = report.currency.as_deref().unwrap_or("");
-    let money = |text: String| {
-        if currency.is_empty() {
-            text
-        } else {
-            format!("{text} {currency}")
-        }
-    };
-    let heat = report
-        .audit
-        .heat_w
-        .map_or("heat unknown".into(), |w| format!("{} W", digits(w)));
-    let cost = money(report.audit.cost.to_string());
-    let mut out = match report.proof {
-        Some((objective, proof)) => {
-            let superlative = match objective {
-                Objective::Cost => "cheapest",
-                Objective::Heat => "coolest",
-            };
-            let proved = proof.status == "proved";
-            let words = if proved {
-                format!("proved {superlative}")
-            } else {
-                "best found".into()
-            };
-            let mut line = strong(&format!("{words}: {cost} a unit, {heat}"), proved, page);
-            if !proved {
-                let bound = match objective {
-                    Objective::Cost => money(format!("{:.4}", proof.bound)),
-                    Objective::Heat => format!("{} W", digits(proof.bound)),
-                };
-                line.push_str(&format!("\nstopped before the proof: no build has less than {bound}"));
-            }
-            line
-        }
-        None => strong(&format!("{cost} a unit, {heat}"), report.audit.passes(), page),
-    };
-    out.push('\n');
-    if !report.supply.name.is_empty() {
-        let run = report
-            .lines
-            .iter()
-            .map(|l| l.cost().of_run(report.supply.builds))
-            .sum::<crate::units::RunCost>();
-        let units = counted(report.supply.builds, "unit");
-        out.push_str(&format!(
-            "{}, {units}: {}\n",
-            printable(&report.supply.name),
-            money(run.to_string())
-        ));
-    }
-    out.push('\n');
     out
 }
 
@@ -337,7 +282,7 @@ const NARROW: u16 = 90;
 
 /// A table in the house look: a ruled header, a gap between columns. On a narrow page only the columns of free
 /// text in `wraps` give way.
-fn sheet(header: &[&str], numbers: &[usize], wraps: &[usize], page: Page) -> Table {
+pub(super) fn sheet(header: &[&str], numbers: &[usize], wraps: &[usize], page: Page) -> Table {
     let mut table = Table::new();
     table
         .load_style(
@@ -371,7 +316,7 @@ fn sheet(header: &[&str], numbers: &[usize], wraps: &[usize], page: Page) -> Tab
     table
 }
 
-fn set(table: &Table) -> String {
+pub(super) fn set(table: &Table) -> String {
     table.lines().map(|line| format!("{}\n", line.trim_end())).collect()
 }
 
@@ -397,7 +342,7 @@ pub(super) fn wrapped(text: &str, first: &str, later: &str, width: Option<u16>) 
     out + &line + "\n"
 }
 
-fn strong(text: &str, good: bool, page: Page) -> String {
+pub(super) fn strong(text: &str, good: bool, page: Page) -> String {
     match (page.colour, good) {
         (false, _) => text.to_owned(),
         (true, true) => format!("\u{1b}[1;32m{text}\u{1b}[0m"),
@@ -405,7 +350,7 @@ fn strong(text: &str, good: bool, page: Page) -> String {
     }
 }
 
-fn counted(n: u64, what: &str) -> String {
+pub(super) fn counted(n: u64, what: &str) -> String {
     if n == 1 {
         format!("1 {what}")
     } else {

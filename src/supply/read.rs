@@ -2,6 +2,7 @@
 
 use super::rails;
 use super::reader::{Reader, Table};
+use super::settings::apply;
 use super::tree::{Node, Value};
 use super::{Ageing, Ambient, Caps, Mains, Margins, Supply};
 use crate::fault::Fault;
@@ -13,9 +14,17 @@ use crate::units::Wrong;
 /// # Errors
 /// Every fault of the file, with line and key path; of a TOML syntax error that one alone.
 pub fn read(path: &std::path::Path) -> Result<Supply, Vec<Fault>> {
+    read_with(path, &[])
+}
+
+/// Reads a supply file with settings ("KEY=VALUE"), each as if it stood in the file instead of what does.
+///
+/// # Errors
+/// As [`read`]; a fault of a setting names the setting instead of a line.
+pub fn read_with(path: &std::path::Path, settings: &[String]) -> Result<Supply, Vec<Fault>> {
     let file = path.display().to_string();
     let text = text::read(path)?;
-    let node = Node::from_toml(&text).map_err(|(line, message)| {
+    let mut node = Node::from_toml(&text).map_err(|(line, message)| {
         vec![Fault {
             file: file.clone(),
             line,
@@ -23,7 +32,30 @@ pub fn read(path: &std::path::Path) -> Result<Supply, Vec<Fault>> {
             ..Fault::default()
         }]
     })?;
-    supply(&node, &file)
+    let faults = apply(&mut node, settings);
+    with(faults, supply(&node, &file))
+}
+
+/// A supply with settings ("KEY=VALUE"), checked as a whole once more.
+///
+/// # Errors
+/// Every fault; one of a setting names the setting.
+pub fn changed(supply: &Supply, settings: &[String]) -> Result<Supply, Vec<Fault>> {
+    let mut node = Node::from_json(&supply.content);
+    let faults = apply(&mut node, settings);
+    with(faults, self::supply(&node, ""))
+}
+
+/// Faults of the settings come first.
+fn with(mut faults: Vec<Fault>, supply: Result<Supply, Vec<Fault>>) -> Result<Supply, Vec<Fault>> {
+    match supply {
+        Ok(supply) if faults.is_empty() => Ok(supply),
+        Ok(_) => Err(faults),
+        Err(more) => {
+            faults.extend(more);
+            Err(faults)
+        }
+    }
 }
 
 /// Reads the supply of a saved build.

@@ -49,7 +49,7 @@ impl Reader<'_> {
     /// A fault at a key, or at the table where the key is missing.
     pub(super) fn fault(&mut self, table: &Table<'_>, key: &str, wrong: Wrong) {
         let node = table.get(key);
-        self.faults.push(Fault {
+        let mut fault = Fault {
             file: self.file.to_owned(),
             line: node.map_or(table.line, |n| n.line),
             column: Some(table.path_of(key)),
@@ -57,7 +57,12 @@ impl Reader<'_> {
             text: node.map(Node::text).unwrap_or_default(),
             problem: wrong.problem,
             allowed: wrong.allowed,
-        });
+        };
+        // What the caller set is a fault of the call, not of the file.
+        if let Some(setting) = node.and_then(|n| n.setting.as_ref()) {
+            (fault.file, fault.line, fault.column) = (String::new(), None, Some(format!("--set {setting}")));
+        }
+        self.faults.push(fault);
     }
 
     /// Faults every key that the table does not know.

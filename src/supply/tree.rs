@@ -10,6 +10,8 @@ use crate::text::line_at;
 pub(super) struct Node {
     /// Line counted from 1, none in JSON.
     pub(super) line: Option<u64>,
+    /// The setting that put it here, as it was given; none: it stands in the document.
+    pub(super) setting: Option<String>,
     /// What stands there.
     pub(super) value: Value,
 }
@@ -76,7 +78,23 @@ impl Node {
             ),
             Json::Null => Value::Other("null".into()),
         };
-        Node { line: None, value }
+        Node::from(value)
+    }
+
+    /// A TOML value alone, as it stands behind an equals sign.
+    pub(super) fn from_toml_value(text: &str) -> Option<Node> {
+        let value = DeValue::parse(text).ok()?;
+        Some(value_node(text, &value).without_lines())
+    }
+
+    /// The same without lines: it stands in no file.
+    fn without_lines(self) -> Node {
+        let value = match self.value {
+            Value::List(items) => Value::List(items.into_iter().map(Node::without_lines).collect()),
+            // No key takes a table inside a value.
+            value => value,
+        };
+        Node::from(value)
     }
 
     /// The same document as JSON. Only read once the document has no fault, so every number is finite.
@@ -102,6 +120,16 @@ impl Node {
     }
 }
 
+impl From<Value> for Node {
+    fn from(value: Value) -> Node {
+        Node {
+            line: None,
+            setting: None,
+            value,
+        }
+    }
+}
+
 fn table_node(text: &str, start: usize, table: &DeTable<'_>) -> Node {
     let mut entries: Vec<_> = table.iter().collect();
     // toml sorts by key: put the order written back, so that a saved build shows the file as it was.
@@ -116,6 +144,7 @@ fn table_node(text: &str, start: usize, table: &DeTable<'_>) -> Node {
     };
     Node {
         line: Some(line_at(text, start)),
+        setting: None,
         value: Value::Table(entries.into_iter().map(entry).collect()),
     }
 }
@@ -133,6 +162,7 @@ fn value_node(text: &str, value: &Spanned<DeValue<'_>>) -> Node {
     };
     Node {
         line: Some(line_at(text, start)),
+        setting: None,
         value: node,
     }
 }

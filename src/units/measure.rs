@@ -114,6 +114,13 @@ impl Measure {
     }
 }
 
+/// Number and unit of a quantity as it is written, the number in that unit; `None` where no number begins it.
+#[must_use]
+pub fn number_and_unit(text: &str) -> Option<(f64, &str)> {
+    let (number, unit) = decimal(text.trim())?;
+    Some((number.times_ten_to(0)?, unit.trim_start()))
+}
+
 /// An IEC 60062 code: the letter stands for the point and for the power of ten. Gives the digits with a point.
 fn letter_code(text: &str, dimension: Dimension) -> Option<(String, i32)> {
     let (at, letter) = text.char_indices().find(|(_, c)| !c.is_ascii_digit())?;

@@ -5,7 +5,7 @@ mod money;
 mod quantity;
 mod range;
 
-pub use measure::{Measure, money, whole};
+pub use measure::{Measure, money, number_and_unit, whole};
 pub use money::{Money, RunCost};
 pub use quantity::Dimension;
 pub use range::Range;

@@ -107,12 +107,7 @@ impl Changed {
             supply.caps.heat_w = None;
         }
         if lifted.contains(&Limit::Stock) {
-            let parts = (catalogue.transformers.iter_mut().map(|x| &mut x.part))
-                .chain(catalogue.rectifiers.iter_mut().map(|x| &mut x.part))
-                .chain(catalogue.reservoirs.iter_mut().map(|x| &mut x.part))
-                .chain(catalogue.pass_devices.iter_mut().map(|x| &mut x.part))
-                .chain(catalogue.sinks.iter_mut().map(|x| &mut x.part));
-            for part in parts {
+            for part in catalogue.parts_mut() {
                 if unlimited(part) {
                     part.stock = None;
                 }
