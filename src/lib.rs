@@ -11,6 +11,7 @@ pub mod physics;
 pub mod report;
 pub mod saved;
 pub mod screen;
+pub mod study;
 pub mod suggest;
 pub mod supply;
 pub mod text;

@@ -6,7 +6,7 @@ use std::fs;
 use std::path::{Path, PathBuf};
 
 /// Modules in the order of the data flow: one may use those before it and its equals of the first two ranks.
-const RANKS: [&[&str]; 9] = [
+const RANKS: [&[&str]; 10] = [
     &["units", "fault", "suggest", "text"],
     &["catalogue"],
     &["supply", "physics"],
@@ -14,6 +14,7 @@ const RANKS: [&[&str]; 9] = [
     &["audit", "saved"],
     &["screen"],
     &["optimise"],
+    &["study"],
     &["report"],
     &["cli"],
 ];

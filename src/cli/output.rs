@@ -43,6 +43,12 @@ impl Answer {
         self
     }
 
+    /// A CSV file has no room for cautions, but no build goes without them.
+    pub(super) fn with_cautions(self, cautions: &[String], common: &Common) -> Answer {
+        let said = cautions.iter().filter(|_| common.format == Format::Csv);
+        self.with_talk(said.cloned())
+    }
+
     pub(super) fn with_save(mut self, save: Option<(PathBuf, String)>) -> Answer {
         self.save = save;
         self

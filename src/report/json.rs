@@ -2,7 +2,7 @@
 
 use serde_json::{Map, Value, json};
 
-use super::Report;
+use super::{ProofLine, Report};
 use crate::audit::{Limit, Margin};
 use crate::catalogue::{Part, Sink};
 use crate::fault::Fault;
@@ -63,15 +63,13 @@ pub fn build(report: &Report) -> Value {
             })
         })
         .collect();
-    let proof = report
-        .proof
-        .map(|(_, p)| json!({"status": p.status, "value": p.value, "bound": p.bound}));
+    let proof = report.proof.map(|(_, p)| proof(p));
     let parts: Map<String, Value> = report
         .lines
         .iter()
         .map(|l| (l.part.name.clone(), cells(l.part)))
         .collect();
-    json!({
+    let mut document = json!({
         "schema": crate::saved::SCHEMA,
         "supply": supply.content,
         "catalogue": report.catalogue,
@@ -90,7 +88,11 @@ pub fn build(report: &Report) -> Value {
         "margins": margins(report),
         "cautions": report.cautions,
         "parts": parts,
-    })
+    });
+    if let (Some(shelf), Some(document)) = (&report.shelf, document.as_object_mut()) {
+        document.insert("shelf".into(), super::shelf::json(shelf));
+    }
+    document
 }
 
 fn cells(part: &Part) -> Value {
@@ -106,7 +108,11 @@ fn margins(report: &Report) -> Vec<Value> {
     report.audit.margins.iter().map(|m| margin(m, report.unit(m))).collect()
 }
 
-fn margin(margin: &Margin, unit: &str) -> Value {
+pub(super) fn proof(proof: ProofLine) -> Value {
+    json!({"status": proof.status, "value": proof.value, "bound": proof.bound})
+}
+
+pub(super) fn margin(margin: &Margin, unit: &str) -> Value {
     let check = &margin.check;
     // What is missing leaves value and margin open; the bound may still be known.
     let value = if check.missing().is_some() {

@@ -8,7 +8,7 @@ use crate::fault::Fault;
 use crate::suggest::did_you_mean;
 
 /// Keys of the document; those after the first four are written by the tool and not needed.
-const TOP: [&str; 17] = [
+const TOP: [&str; 18] = [
     "supply",
     "transformers",
     "sections",
@@ -26,6 +26,7 @@ const TOP: [&str; 17] = [
     "margins",
     "cautions",
     "parts",
+    "shelf",
 ];
 const TRANSFORMER: [&str; 2] = ["id", "part"];
 const SECTION: [&str; 13] = [
