@@ -11,7 +11,7 @@ use super::find::code;
 use super::output::{Answer, page};
 use super::{Common, Failure, Format, input};
 use crate::catalogue::{PartId, load};
-use crate::optimise::{Proof, Question};
+use crate::optimise::{Proof, Question, optimise};
 use crate::report::json;
 use crate::report::swap::{LossReport, SwapReport};
 use crate::saved;
@@ -97,7 +97,13 @@ impl Swap {
             };
             (Answer::new(text, code(proved)), counts)
         } else {
-            let found = swap(&question, &old, self.free).map_err(Failure::Bug)?;
+            let mut found = swap(&question, &old, self.free).map_err(Failure::Bug)?;
+            if found.free.is_none() && !found.outcome.builds.is_empty() {
+                // Only to say what more changes would bring.
+                let plain = optimise(&question).map_err(Failure::Bug)?;
+                found.outcome.counts.add(&plain.counts);
+                found.free = plain.builds.into_iter().next();
+            }
             let look = |report: &crate::report::Report| {
                 shelf(question.supply, question.catalogue, &report.build, &question.without)
             };

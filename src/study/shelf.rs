@@ -92,21 +92,15 @@ fn replaced<'c>(catalogue: &'c Catalogue, build: &Build<'c>, old: &Part, new: &P
                 }
                 instance.part = new;
                 for section in build.sections.iter_mut().filter(|s| s.transformer == place) {
-                    // The negative half of a pair has no secondaries of its own.
-                    if !section.hookup.secondaries.is_empty() {
+                    if !section.is_negative_half() {
                         section.hookup = Hookup::of_places(section.hookup.kind, &section.hookup.secondaries, new)?;
                     }
                 }
             }
             for place in 0..build.sections.len() {
-                if let (true, Some(pair)) = (
-                    build.sections[place].hookup.secondaries.is_empty(),
-                    build.sections[place].pair,
-                ) {
-                    build.sections[place].hookup = Hookup {
-                        secondaries: Vec::new(),
-                        ..build.sections[pair].hookup.clone()
-                    };
+                let section = &build.sections[place];
+                if let Some(pair) = section.pair.filter(|_| section.is_negative_half()) {
+                    build.sections[place].hookup = build.sections[pair].hookup.negative_half();
                 }
             }
         }

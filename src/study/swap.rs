@@ -7,6 +7,7 @@ use crate::audit::audit;
 use crate::build::{Build, places};
 use crate::catalogue::{Catalogue, Part, PartId, Slot, Status};
 use crate::optimise::{Disagreement, Found, Near, Outcome, Proof, Question, optimise};
+use crate::screen::{Counts, Stop};
 use crate::supply::Supply;
 use crate::units::Money;
 
@@ -125,90 +126,107 @@ pub struct Swap<'c> {
 
 /// The build with the least (distance, key), or (`free`) the least key alone.
 ///
-/// The plain optimum comes first: where there is none nothing else can be, and its distance bounds what is looked for.
-/// Then the distance rises from the number of places that must change until there is a build.
+/// The number of places that must change in any case is tried first: mostly there is such a build, and what lies near is
+/// soon searched. Else the plain optimum shows whether there is any build, and its distance bounds what is looked for as
+/// the distance rises until there is one.
 ///
 /// # Errors
 /// When search and audit disagree: a bug to report.
 pub fn swap<'c>(question: &Question<'c>, old: &Old, free: bool) -> Result<Swap<'c>, Disagreement> {
-    let question = Question {
-        top: 1,
-        ..question.clone()
-    };
-    let least = old.least_distance(&question);
-    let plain = optimise(&Question {
-        stop: if free {
-            question.stop.clone()
-        } else {
-            question.stop.half().unwatched()
+    let mut search = Search {
+        question: Question {
+            top: 1,
+            ..question.clone()
         },
-        ..question.clone()
-    })?;
+        old,
+        counts: Counts::default(),
+    };
+    if free {
+        let plain = search.plain(question.stop.clone())?;
+        return Ok(search.done(plain.builds.first().cloned(), plain.proof, plain.builds.into_iter().next()));
+    }
+    let least = old.least_distance(question);
+    let hasty = search.near(least, question.stop.half().unwatched())?;
+    if hasty.proof == Proof::Proved && !hasty.builds.is_empty() {
+        return Ok(search.done(hasty.builds.into_iter().next(), Proof::Proved, None));
+    }
+    let plain = search.plain(question.stop.half().unwatched())?;
     let proved = plain.proof == Proof::Proved;
-    let most = plain
-        .builds
-        .first()
-        .map(|found| old.distance(question.supply, &found.build));
-    if free || (proved && most.is_none_or(|most| most == least)) {
-        return Ok(Swap {
-            distance: most,
-            free: plain.builds.first().cloned(),
-            outcome: plain,
-        });
+    let far = plain.builds.into_iter().next();
+    let most = far.as_ref().map(|found| old.distance(question.supply, &found.build));
+    if proved && far.is_none() {
+        return Ok(search.done(None, Proof::Proved, None));
     }
     // No build has a lower objective, near or far.
-    let bound = match plain.proof {
-        Proof::Proved => plain
-            .builds
-            .first()
-            .map_or(0, |found| found.key.objective(question.objective)),
-        Proof::Open { bound } => bound,
+    let bound = match (plain.proof, &far) {
+        (Proof::Open { bound }, _) => bound,
+        (Proof::Proved, far) => far.as_ref().map_or(0, |found| found.key.objective(question.objective)),
     };
-    let mut counts = plain.counts;
-    let far = plain.builds.into_iter().next();
-    for reach in least..=most.unwrap_or(old.places.iter().map(|places| places.len()).sum()) {
-        let outcome = optimise(&Question {
-            near: Some(Near {
-                places: old.places.clone(),
-                most: reach,
-            }),
-            ..question.clone()
-        })?;
-        counts.add(&outcome.counts);
-        let stopped = outcome.proof != Proof::Proved;
-        let near = outcome.builds.into_iter().next();
-        if let Some(found) = near
-            .as_ref()
-            .filter(|found| old.distance(question.supply, &found.build) > reach)
-        {
-            return Err(too_far(found, reach));
+    let first = least + usize::from(hasty.proof == Proof::Proved);
+    for reach in first..=most.unwrap_or(old.places.iter().map(|places| places.len()).sum()) {
+        if proved && most == Some(reach) {
+            // Nothing is nearer, and nothing has a lower key.
+            return Ok(search.done(far.clone(), Proof::Proved, far));
         }
-        if near.is_none() && !stopped {
-            continue;
+        let outcome = search.near(reach, question.stop.clone())?;
+        let found = outcome.builds.into_iter().next();
+        if outcome.proof != Proof::Proved {
+            return Ok(search.done(found.or_else(|| far.clone()), Proof::Open { bound }, far));
         }
-        let builds: Vec<Found> = near.or_else(|| far.clone()).into_iter().collect();
-        return Ok(Swap {
-            distance: builds.first().map(|found| old.distance(question.supply, &found.build)),
-            outcome: Outcome {
-                builds,
-                proof: if stopped { Proof::Open { bound } } else { Proof::Proved },
-                counts,
-            },
-            free: far,
-        });
+        if found.is_some() {
+            return Ok(search.done(found, Proof::Proved, far));
+        }
     }
     match (far, most) {
         // The plain search found one within reach.
         (Some(found), Some(most)) => Err(too_far(&found, most)),
-        _ => Ok(Swap {
-            distance: None,
+        _ => Ok(search.done(None, Proof::Proved, None)),
+    }
+}
+
+/// The searches for one substitute.
+struct Search<'s, 'c> {
+    question: Question<'c>,
+    old: &'s Old<'s>,
+    counts: Counts,
+}
+
+impl<'c> Search<'_, 'c> {
+    fn plain(&mut self, stop: Stop) -> Result<Outcome<'c>, Disagreement> {
+        let outcome = optimise(&Question {
+            stop,
+            ..self.question.clone()
+        })?;
+        self.counts.add(&outcome.counts);
+        Ok(outcome)
+    }
+
+    /// The best build with at most so many changes.
+    fn near(&mut self, most: usize, stop: Stop) -> Result<Outcome<'c>, Disagreement> {
+        let places = self.old.places.clone();
+        let outcome = optimise(&Question {
+            near: Some(Near { places, most }),
+            stop,
+            ..self.question.clone()
+        })?;
+        self.counts.add(&outcome.counts);
+        let farther = |found: &&Found| self.old.distance(self.question.supply, &found.build) > most;
+        match outcome.builds.iter().find(farther) {
+            Some(found) => Err(too_far(found, most)),
+            None => Ok(outcome),
+        }
+    }
+
+    fn done(&self, found: Option<Found<'c>>, proof: Proof, free: Option<Found<'c>>) -> Swap<'c> {
+        Swap {
+            distance: (found.as_ref()).map(|found| self.old.distance(self.question.supply, &found.build)),
             outcome: Outcome {
-                builds: Vec::new(),
-                proof: Proof::Proved,
-                counts,
+                builds: found.into_iter().collect(),
+                proof,
+                counts: self.counts,
             },
-            free: None,
-        }),
+            free,
+        }
     }
 }
 
