@@ -23,7 +23,7 @@ impl Why {
         let read = self.asked.read()?;
         let (question, _ticker) = self.asked.question(&read, common)?;
         let mut faults = Vec::new();
-        let id = input::part(&self.part, "", question.catalogue, &mut faults);
+        let id = input::part(&self.part, "PART", question.catalogue, &mut faults);
         let part = id.and_then(|id| question.catalogue.parts().find(|part| part.id == id));
         let Some(part) = part else {
             return Err(Failure::Input(faults));

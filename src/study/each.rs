@@ -4,6 +4,7 @@ use std::collections::BTreeSet;
 use std::sync::Mutex;
 use std::sync::atomic::{AtomicUsize, Ordering};
 
+use super::hopeless;
 use crate::catalogue::{Part, PartId, Slot, Status};
 use crate::optimise::{Disagreement, Outcome, Proof, Question, optimise};
 use crate::screen::Counts;
@@ -50,12 +51,20 @@ pub fn each<'c>(
         }
         let mut with = question.with.clone();
         with.push((part.id, None));
-        optimise(&Question {
+        let forced = Question {
             top: 1,
             with,
             stop: question.stop.unwatched(),
             ..question.clone()
-        })
+        };
+        if hopeless(&forced, part.id) {
+            return Ok(Outcome {
+                builds: Vec::new(),
+                proof: Proof::Proved,
+                counts: Counts::default(),
+            });
+        }
+        optimise(&forced)
     };
     let mut found: Vec<Each<'c>> = Vec::new();
     for (part, outcome) in parts.iter().zip(side_by_side(&parts, |part| around(part), question)) {

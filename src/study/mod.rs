@@ -7,3 +7,32 @@ pub mod each;
 pub mod shelf;
 pub mod swap;
 pub mod why;
+
+use crate::catalogue::PartId;
+use crate::optimise::{Question, best_company};
+use crate::supply::{Caps, Supply};
+
+/// Whether it is sure that no build passes with a part, because no rail alone does: soon known, where a search that is
+/// forced to use the part has to look at everything before it gives up. Only where no rail shares anything: a neighbour's
+/// load may take heat off a device. Caps on cost and heat are left out, since shared price breaks may bring a whole
+/// supply below what one rail alone costs.
+fn hopeless(question: &Question, part: PartId) -> bool {
+    let supply = question.supply;
+    if supply.rails.len() > 1 && !supply.share_never {
+        return false;
+    }
+    let uncapped = Supply {
+        caps: Caps {
+            cost: None,
+            heat_w: None,
+            ..supply.caps.clone()
+        },
+        ..supply.clone()
+    };
+    let asked = Question {
+        supply: &uncapped,
+        ..question.clone()
+    };
+    let (best, complete) = best_company(&asked, part);
+    complete && best.is_none_or(|alone| !alone.company.met)
+}

@@ -143,7 +143,11 @@ pub fn swap<'c>(question: &Question<'c>, old: &Old, free: bool) -> Result<Swap<'
     };
     if free {
         let plain = search.plain(question.stop.clone())?;
-        return Ok(search.done(plain.builds.first().cloned(), plain.proof, plain.builds.into_iter().next()));
+        return Ok(search.done(
+            plain.builds.first().cloned(),
+            plain.proof,
+            plain.builds.into_iter().next(),
+        ));
     }
     let least = old.least_distance(question);
     let hasty = search.near(least, question.stop.half().unwatched())?;

@@ -1,5 +1,6 @@
 //! Owns why a part stays out: what forcing it in would cost, or which limits keep it out in its best company.
 
+use super::hopeless;
 use crate::audit::{Margin, audit};
 use crate::build::{Build, device_serves, hookups, pieces_of_rectifier, sink_takes};
 use crate::catalogue::{PartId, RectifierKind, Slot};
@@ -69,7 +70,15 @@ pub fn why<'c>(question: &Question<'c>, part: PartId) -> Result<Why<'c>, Disagre
         with: question.with.iter().copied().chain([(part, None)]).collect(),
         ..plain.clone()
     };
-    let with = optimise(&forced)?;
+    let with = if hopeless(&forced, part) {
+        Outcome {
+            builds: Vec::new(),
+            proof: Proof::Proved,
+            counts: Counts::default(),
+        }
+    } else {
+        optimise(&forced)?
+    };
     let mut counts = with.counts;
     let mut best = || -> Result<Outcome<'c>, Disagreement> {
         let best = optimise(&plain)?;
