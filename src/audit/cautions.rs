@@ -101,7 +101,8 @@ pub fn cautions(supply: &Supply, build: &Build) -> Vec<String> {
 }
 
 /// The break up to which it pays to buy, and what it saves over the whole run.
-fn cheaper_to_buy_more(part: &Part, pieces: u64) -> Option<(u64, RunCost)> {
+#[must_use]
+pub fn cheaper_to_buy_more(part: &Part, pieces: u64) -> Option<(u64, RunCost)> {
     let now = part.unit_price(pieces).of_run(pieces);
     (part.breaks.iter())
         .filter(|b| b.pieces > pieces && part.stock.is_none_or(|stock| b.pieces <= stock))

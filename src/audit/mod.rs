@@ -15,7 +15,7 @@ mod thermal;
 pub mod transformer;
 pub mod whole;
 
-pub use cautions::{SAFETY, cautions};
+pub use cautions::{SAFETY, cautions, cheaper_to_buy_more};
 pub use check::{Check, Corner, Known, Limit, Sense};
 pub use heat::{HeatItem, SectionHeat, compared, core_w, total_w};
 pub use pass::Stage;

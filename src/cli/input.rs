@@ -25,7 +25,6 @@ impl Settings {
     }
 
     /// A supply read before, with the settings in it.
-    #[allow(dead_code)] // for the commands that start from a saved build
     pub(super) fn change(&self, supply: &Supply) -> Result<Supply, Failure> {
         Ok(changed(supply, &self.settings)?)
     }

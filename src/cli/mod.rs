@@ -1,11 +1,15 @@
 //! Owns the command line: input, output and exit codes. Nothing below it prints.
 
+mod asked;
 mod audit;
 mod find;
 mod input;
 mod output;
+mod progress;
+mod swap;
 mod vet;
 mod wave;
+mod why;
 
 use std::ffi::OsString;
 use std::path::PathBuf;
@@ -25,6 +29,10 @@ use output::Answer;
   binrail pick supply.toml                      choose the cheapest build and prove it
   binrail pick supply.toml --by heat --save a.json
   binrail rank supply.toml --top 10             the ten best builds
+  binrail rank supply.toml --each pass          second sources: the best build around every pass device
+  binrail swap a.json --without Z1-0412         redo a saved build when parts are gone
+  binrail front supply.toml                     what each watt less costs
+  binrail why supply.toml Z1-0412               what keeps a part out, or what forcing it in would cost
   binrail audit a.json                          every limit of a saved or hand-written build
   binrail vet stock/                            check a catalogue
   binrail wave --source-v 12 --hz 50 --winding-ohm 0.5 --path bridge --threshold-v 0.7 --slope-ohm 0.02 \\
@@ -90,8 +98,25 @@ enum Command {
     /// The best N builds, exact, best first
     #[command(after_help = "Examples:
   binrail rank supply.toml --top 20
-  binrail rank supply.toml --by heat --format json")]
+  binrail rank supply.toml --by heat --format json
+  binrail rank supply.toml --each transformer   what each transformer would cost, with the best build around it")]
     Rank(find::Rank),
+    /// Redo a saved build when parts are gone: the fewest changes, then the best
+    #[command(after_help = "Examples:
+  binrail swap build.json                       whatever is gone, withdrawn or short of stock must go
+  binrail swap build.json --without Z1-0412 --save new.json
+  binrail swap build.json --without Z1-0412 --free
+  binrail swap build.json --each                what the loss of each part would cost")]
+    Swap(swap::Swap),
+    /// The whole trade-off between cost and heat, the cheapest first (the same with either --by)
+    #[command(after_help = "Example:
+  binrail front supply.toml --format csv -o curve.csv")]
+    Front(find::Front),
+    /// What keeps a part out, or what forcing it in would cost
+    #[command(after_help = "Examples:
+  binrail why supply.toml Z1-0412
+  binrail why supply.toml Z4-0210 --by heat --format json")]
+    Why(why::Why),
     /// Every limit of a saved or hand-written build
     #[command(after_help = "Examples:
   binrail audit build.json
@@ -150,6 +175,9 @@ pub fn run(arguments: impl IntoIterator<Item = OsString>) -> u8 {
     let answer: Result<Answer, Failure> = match &cli.command {
         Command::Pick(pick) => pick.run(common),
         Command::Rank(rank) => rank.run(common),
+        Command::Swap(swap) => swap.run(common),
+        Command::Front(front) => front.run(common),
+        Command::Why(why) => why.run(common),
         Command::Audit(audit) => audit.run(common),
         Command::Wave(wave) => wave.run(common),
         Command::Vet(vet) => vet.run(common),

@@ -33,11 +33,6 @@ impl Answer {
         }
     }
 
-    pub(super) fn with_code(mut self, code: u8) -> Answer {
-        self.code = code;
-        self
-    }
-
     pub(super) fn with_talk(mut self, talk: impl IntoIterator<Item = String>) -> Answer {
         self.talk.extend(talk);
         self
@@ -46,6 +41,12 @@ impl Answer {
     pub(super) fn with_work(mut self, work: String) -> Answer {
         self.work.push(work);
         self
+    }
+
+    /// A CSV file has no room for cautions, but no build goes without them.
+    pub(super) fn with_cautions(self, cautions: &[String], common: &Common) -> Answer {
+        let said = cautions.iter().filter(|_| common.format == Format::Csv);
+        self.with_talk(said.cloned())
     }
 
     pub(super) fn with_save(mut self, save: Option<(PathBuf, String)>) -> Answer {

@@ -16,7 +16,9 @@ mod search;
 mod tighten;
 
 pub use best::{Found, Key};
-pub use company::{Companies, Company, Joint, Nearest, Reasons, Rejection, companies, rejections};
+pub use company::{
+    Alone, Companies, Company, Joint, Nearest, Reasons, Rejection, Together, best_company, companies, joint, rejections,
+};
 pub use front::front;
 pub use milp::{Answer, Choices, Column, PlanChoice, Solver, least};
 

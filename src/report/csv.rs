@@ -2,6 +2,7 @@
 
 use super::Report;
 use super::json::wave_figures;
+use crate::audit::Margin;
 use crate::fault::Fault;
 use crate::physics::raw_section::Waveform;
 
@@ -61,38 +62,49 @@ pub fn rank(reports: &[Report]) -> String {
     table(
         &["place", "cost_per_unit", "heat_w", "parts"],
         reports.iter().enumerate().map(|(place, r)| {
-            let parts: Vec<String> = r.lines.iter().map(|l| format!("{}x{}", l.qty, l.part.name)).collect();
             vec![
                 (place + 1).to_string(),
                 r.audit.cost.to_string(),
                 r.audit.heat_w.map(|w| w.to_string()).unwrap_or_default(),
-                parts.join(" "),
+                parts(r),
             ]
         }),
     )
 }
 
+/// The bill of materials in one cell.
+pub(super) fn parts(report: &Report) -> String {
+    let part = |l: &crate::build::Line| format!("{}x{}", l.qty, l.part.name);
+    report.lines.iter().map(part).collect::<Vec<_>>().join(" ")
+}
+
+/// A figure that may not be known.
+pub(super) fn number(value: Option<f64>) -> String {
+    value.map(|value| value.to_string()).unwrap_or_default()
+}
+
+/// Columns of a limit, behind what names it.
+pub(super) const MARGIN: [&str; 8] = ["of", "limit", "value", "bound", "unit", "margin", "corner", "missing"];
+
+/// One limit.
+pub(super) fn margin(m: &Margin, unit: &str) -> Vec<String> {
+    let missing = m.check.missing();
+    vec![
+        m.of.clone(),
+        m.check.limit.word().to_owned(),
+        number(if missing.is_some() { None } else { m.check.value.ok() }),
+        number(m.check.bound.ok()),
+        unit.to_owned(),
+        number(m.check.margin()),
+        m.check.corner.map_or("", |c| c.word()).to_owned(),
+        missing.unwrap_or_default().to_owned(),
+    ]
+}
+
 /// Every limit of an audited build.
 #[must_use]
 pub fn margins(report: &Report) -> String {
-    let number = |x: Option<f64>| x.map(|x| x.to_string()).unwrap_or_default();
-    let header = ["of", "limit", "value", "bound", "unit", "margin", "corner", "missing"];
-    table(
-        &header,
-        report.audit.margins.iter().map(|m| {
-            let missing = m.check.missing();
-            vec![
-                m.of.clone(),
-                m.check.limit.word().to_owned(),
-                number(if missing.is_some() { None } else { m.check.value.ok() }),
-                number(m.check.bound.ok()),
-                report.unit(m).to_owned(),
-                number(m.check.margin()),
-                m.check.corner.map_or("", |c| c.word()).to_owned(),
-                missing.unwrap_or_default().to_owned(),
-            ]
-        }),
-    )
+    table(&MARGIN, report.audit.margins.iter().map(|m| margin(m, report.unit(m))))
 }
 
 /// The figures of `wave`.

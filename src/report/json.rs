@@ -2,7 +2,7 @@
 
 use serde_json::{Map, Value, json};
 
-use super::{Report, relaxed};
+use super::{ProofLine, Report, relaxed};
 use crate::audit::{Limit, Margin};
 use crate::catalogue::{Part, Sink};
 use crate::fault::Fault;
@@ -63,9 +63,7 @@ pub fn build(report: &Report) -> Value {
             })
         })
         .collect();
-    let proof = report
-        .proof
-        .map(|(_, p)| json!({"status": p.status, "value": p.value, "bound": p.bound}));
+    let proof = report.proof.map(|(_, p)| proof(p));
     let parts: Map<String, Value> = report
         .lines
         .iter()
@@ -93,6 +91,12 @@ pub fn build(report: &Report) -> Value {
     });
     if let Some(object) = document.as_object_mut() {
         object.extend(relaxed::of_build(report));
+        object.extend(
+            report
+                .shelf
+                .as_ref()
+                .map(|shelf| ("shelf".to_owned(), super::shelf::json(shelf))),
+        );
     }
     document
 }
@@ -110,7 +114,11 @@ fn margins(report: &Report) -> Vec<Value> {
     report.audit.margins.iter().map(|m| margin(m, report.unit(m))).collect()
 }
 
-fn margin(margin: &Margin, unit: &str) -> Value {
+pub(super) fn proof(proof: ProofLine) -> Value {
+    json!({"status": proof.status, "value": proof.value, "bound": proof.bound})
+}
+
+pub(super) fn margin(margin: &Margin, unit: &str) -> Value {
     let check = &margin.check;
     // What is missing leaves value and margin open; the bound may still be known.
     let value = if check.missing().is_some() {

@@ -87,10 +87,6 @@ impl NoBuild {
     /// The limits that cannot hold together, stock with its part.
     #[must_use]
     pub fn joint(&self) -> Vec<String> {
-        let name = |j: &Joint| match &j.part {
-            Some(part) => format!("{} {part}", j.limit.word()),
-            None => j.limit.word().to_owned(),
-        };
-        self.reasons.joint.iter().map(name).collect()
+        self.reasons.joint.iter().map(Joint::words).collect()
     }
 }

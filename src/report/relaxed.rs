@@ -3,7 +3,7 @@
 use serde_json::{Map, Value, json};
 
 use super::Report;
-use super::table::{Page, set, sheet};
+use super::page::{Page, set, sheet};
 use super::text::{engineering, printable};
 use crate::screen::Objective;
 use crate::study::{Price, Relaxation, Relaxed};
@@ -99,6 +99,9 @@ fn saved(report: &Report, price: &Price) -> String {
     let saves = Money(price.saves);
     match report.proof {
         Some((Objective::Heat, _)) => engineering(saves.value(), "W"),
-        _ => report.currency.as_ref().map_or(saves.to_string(), |currency| format!("{saves} {currency}")),
+        _ => report
+            .currency
+            .as_ref()
+            .map_or(saves.to_string(), |currency| format!("{saves} {currency}")),
     }
 }

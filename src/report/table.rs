@@ -1,26 +1,18 @@
 //! Owns the tables: what a person reads, orders from and checks.
 
-use comfy_table::presets::NOTHING;
-use comfy_table::{CellAlignment, ColumnConstraint, ContentArrangement, ContentLineStyle, LineStyle, Table};
-
-use super::{Report, relaxed};
 use super::json::{unit_of, wave_figures};
 use super::none::NoBuild;
-use super::text::{digits, engineering, printable};
+use super::page::{DESCRIBED, counted, set, sheet, strong, wrapped};
+use super::text::{digits, engineering, margin_text, printable};
 use super::verdict::verdict;
 use super::wiring::wiring;
+use super::{Report, relaxed};
+use crate::audit::Margin;
 use crate::build::Line;
 use crate::fault::Fault;
 use crate::physics::raw_section::Waveform;
 
-/// How a page is set.
-#[derive(Debug, Clone, Copy, Default)]
-pub struct Page {
-    /// Columns of the terminal; `None`: lines are not wrapped.
-    pub width: Option<u16>,
-    /// Whether colour may be used. Nothing is said by colour alone.
-    pub colour: bool,
-}
+pub use super::page::Page;
 
 /// Pieces left on the shelf after the run; `None`: not limited.
 #[must_use]
@@ -31,11 +23,17 @@ pub fn left(line: &Line, builds: u64) -> Option<u64> {
 /// One build: verdict, wiring, bill of materials, margins, heat, cautions.
 #[must_use]
 pub fn build(report: &Report, page: Page) -> String {
-    let mut out = String::new();
-    out.push_str(&verdict(report, page));
-    out.push_str(&wiring(report, page));
+    verdict(report, page) + &body(report, page)
+}
+
+/// What follows the verdict on a build.
+pub(super) fn body(report: &Report, page: Page) -> String {
+    let mut out = wiring(report, page);
     out.push_str(&format!("\nBill of materials, run of {}\n", report.supply.builds));
     out.push_str(&bill(report, page));
+    if let Some(shelf) = &report.shelf {
+        out.push_str(&super::shelf::table(shelf, report, page));
+    }
     out.push_str(&relaxed::prices(report, page));
     out + &evidence(report, page)
 }
@@ -77,25 +75,12 @@ pub fn rank(reports: &[Report], page: Page) -> String {
         page,
     );
     for (place, report) in reports.iter().enumerate() {
-        let parts: Vec<String> = report
-            .lines
-            .iter()
-            .map(|l| format!("{} {}", l.qty, printable(&l.part.name)))
-            .collect();
-        let tightest = report.audit.tightest().map_or(String::new(), |m| {
-            format!(
-                "{} {} {}",
-                printable(&m.of),
-                m.check.limit.word(),
-                margin_text(m.check.margin(), report.unit(m))
-            )
-        });
         table.add_row([
             (place + 1).to_string(),
             report.audit.cost.to_string(),
             report.audit.heat_w.map_or("?".into(), digits),
-            tightest,
-            parts.join(", "),
+            tightest(report),
+            report.parts(),
         ]);
     }
     let mut out = reports.first().map(|r| verdict(r, page)).unwrap_or_default();
@@ -103,6 +88,18 @@ pub fn rank(reports: &[Report], page: Page) -> String {
     // The cautions of the best build, which all builds of the list share in the main.
     out.push_str(&cautions(reports.first().map_or(&[][..], |r| &r.cautions), page));
     out
+}
+
+/// The tightest limit of a build with its margin.
+pub(super) fn tightest(report: &Report) -> String {
+    report.audit.tightest().map_or(String::new(), |m| {
+        format!(
+            "{} {} {}",
+            printable(&m.of),
+            m.check.limit.word(),
+            margin_text(m.check.margin(), report.unit(m))
+        )
+    })
 }
 
 /// No build: what keeps the parts out.
@@ -224,31 +221,29 @@ fn margins(report: &Report, page: Page) -> String {
         page,
     );
     for margin in report.by_tightness() {
-        let check = &margin.check;
-        let unit = report.unit(margin);
-        let number = |value: Option<f64>| value.map_or("?".into(), |v| engineering(v, unit));
-        let corner = check.corner.map_or("", |c| c.word());
-        let corner = match (check.missing(), check.met()) {
-            (Some(column), _) => format!("{corner} FAILS: {column} is blank"),
-            (None, true) => corner.to_owned(),
-            (None, false) => format!("{corner} FAILS"),
-        };
-        table.add_row([
-            printable(&margin.of),
-            check.limit.word().to_owned(),
-            number(check.value.ok()),
-            number(check.bound.ok()),
-            margin_text(check.margin(), unit),
-            corner.trim_start().to_owned(),
-        ]);
+        table.add_row(margin_row(margin, report.unit(margin)));
     }
     set(&table)
 }
 
-/// A difference of temperatures is in kelvin.
-fn margin_text(margin: Option<f64>, unit: &str) -> String {
-    let unit = if unit == "degC" { "K" } else { unit };
-    margin.map_or("?".into(), |m| engineering(m, unit))
+/// Of, limit, value, bound, margin, corner.
+pub(super) fn margin_row(margin: &Margin, unit: &str) -> [String; 6] {
+    let check = &margin.check;
+    let number = |value: Option<f64>| value.map_or("?".into(), |v| engineering(v, unit));
+    let corner = check.corner.map_or("", |c| c.word());
+    let corner = match (check.missing(), check.met()) {
+        (Some(column), _) => format!("{corner} FAILS: {column} is blank"),
+        (None, true) => corner.to_owned(),
+        (None, false) => format!("{corner} FAILS"),
+    };
+    [
+        printable(&margin.of),
+        check.limit.word().to_owned(),
+        number(check.value.ok()),
+        number(check.bound.ok()),
+        margin_text(check.margin(), unit),
+        corner.trim_start().to_owned(),
+    ]
 }
 
 fn heat(report: &Report, page: Page) -> String {
@@ -267,93 +262,10 @@ fn heat(report: &Report, page: Page) -> String {
     set(&table)
 }
 
-fn cautions(cautions: &[String], page: Page) -> String {
+pub(super) fn cautions(cautions: &[String], page: Page) -> String {
     let mut out = String::from("\nCautions\n");
     for caution in cautions {
         out.push_str(&wrapped(&printable(caution), "- ", "  ", page.width));
     }
     out
-}
-
-/// Narrower pages leave out descriptions.
-const DESCRIBED: u16 = 72;
-/// Pages up to this width have one space between columns, wider ones two.
-const NARROW: u16 = 90;
-
-/// A table in the house look: a ruled header, a gap between columns. On a narrow page only the columns of free
-/// text in `wraps` give way.
-pub(super) fn sheet(header: &[&str], numbers: &[usize], wraps: &[usize], page: Page) -> Table {
-    let mut table = Table::new();
-    table
-        .load_style(
-            NOTHING
-                .header_separator(LineStyle::none().fill('-').junction(' '))
-                .content_lines(ContentLineStyle::none()),
-        )
-        .set_header(header.iter().copied());
-    match page.width {
-        Some(width) => table
-            .set_content_arrangement(ContentArrangement::Dynamic)
-            .set_width(width),
-        None => table.set_content_arrangement(ContentArrangement::Disabled),
-    };
-    let gap = if page.width.is_some_and(|width| width <= NARROW) {
-        1
-    } else {
-        2
-    };
-    for (place, column) in table.column_iter_mut().enumerate() {
-        column.set_padding((0, if place + 1 == header.len() { 0 } else { gap }));
-        if !wraps.contains(&place) {
-            column.set_constraint(ColumnConstraint::ContentWidth);
-        }
-    }
-    for &place in numbers {
-        if let Some(column) = table.column_mut(place) {
-            column.set_cell_alignment(CellAlignment::Right);
-        }
-    }
-    table
-}
-
-pub(super) fn set(table: &Table) -> String {
-    table.lines().map(|line| format!("{}\n", line.trim_end())).collect()
-}
-
-/// Words broken at the page's width, later lines indented.
-pub(super) fn wrapped(text: &str, first: &str, later: &str, width: Option<u16>) -> String {
-    let most = width.map_or(usize::MAX, usize::from).max(20);
-    let mut out = String::new();
-    let mut line = first.to_owned();
-    let mut empty = true;
-    for word in text.split(' ') {
-        if !empty && line.chars().count() + 1 + word.chars().count() > most {
-            out.push_str(&line);
-            out.push('\n');
-            line = later.to_owned();
-            empty = true;
-        }
-        if !empty {
-            line.push(' ');
-        }
-        line.push_str(word);
-        empty = false;
-    }
-    out + &line + "\n"
-}
-
-pub(super) fn strong(text: &str, good: bool, page: Page) -> String {
-    match (page.colour, good) {
-        (false, _) => text.to_owned(),
-        (true, true) => format!("\u{1b}[1;32m{text}\u{1b}[0m"),
-        (true, false) => format!("\u{1b}[1;31m{text}\u{1b}[0m"),
-    }
-}
-
-pub(super) fn counted(n: u64, what: &str) -> String {
-    if n == 1 {
-        format!("1 {what}")
-    } else {
-        format!("{n} {what}s")
-    }
 }

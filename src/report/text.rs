@@ -34,6 +34,29 @@ pub(super) fn engineering(value: f64, unit: &str) -> String {
     format!("{} {prefix}{unit}", digits(value * scale))
 }
 
+/// A margin. A difference of temperatures is in kelvin.
+pub(super) fn margin_text(margin: Option<f64>, unit: &str) -> String {
+    let unit = if unit == "degC" { "K" } else { unit };
+    margin.map_or("?".into(), |m| engineering(m, unit))
+}
+
+/// An amount with its currency, if that is known.
+pub(super) fn money(amount: &str, currency: Option<&str>) -> String {
+    match currency.filter(|c| !c.is_empty()) {
+        Some(currency) => format!("{amount} {currency}"),
+        None => amount.to_owned(),
+    }
+}
+
+/// A change, with its sign.
+pub(super) fn signed(text: &str) -> String {
+    if text.starts_with('-') {
+        text.to_owned()
+    } else {
+        format!("+{text}")
+    }
+}
+
 /// Rounded to four significant digits, so that the prefix is chosen for what is printed.
 fn four_digits(value: f64) -> f64 {
     format!("{value:.3e}").parse().unwrap_or(value)

@@ -1,33 +1,21 @@
 //! Owns the verdict: the first lines of a page, what a build is and how far that is proved.
 
 use super::Report;
-use super::table::{Page, counted, strong};
-use super::text::{digits, printable};
+use super::page::{Page, counted, strong};
+use super::text::{digits, money, printable};
 use crate::screen::Objective;
 
 /// What it is, what it costs, and how far that is proved.
 pub(super) fn verdict(report: &Report, page: Page) -> String {
-    let currency = report.currency.as_deref().unwrap_or("");
-    let money = |text: String| {
-        if currency.is_empty() {
-            text
-        } else {
-            format!("{text} {currency}")
-        }
-    };
-    let heat = report
-        .audit
-        .heat_w
-        .map_or("heat unknown".into(), |w| format!("{} W", digits(w)));
-    let cost = money(report.audit.cost.to_string());
-    let mut out = match report.proof {
+    let figures = figures(report);
+    let out = match report.proof {
         Some((objective, proof)) => {
             let superlative = match objective {
                 Objective::Cost => "cheapest",
                 Objective::Heat => "coolest",
             };
             let amount = |value: f64| match objective {
-                Objective::Cost => money(format!("{value:.4}")),
+                Objective::Cost => money(&format!("{value:.4}"), report.currency.as_deref()),
                 Objective::Heat => format!("{} W", digits(value)),
             };
             let proved = proof.status == "proved";
@@ -40,7 +28,7 @@ pub(super) fn verdict(report: &Report, page: Page) -> String {
                     format!("{found} {within}")
                 }
             };
-            let mut line = strong(&format!("{words}: {cost} a unit, {heat}"), proved, page);
+            let mut line = strong(&format!("{words}: {figures}"), proved, page);
             match report.room {
                 Some((_, best)) => line.push_str(&room(report, superlative, proof.value, best, amount)),
                 None if proved => {}
@@ -51,24 +39,32 @@ pub(super) fn verdict(report: &Report, page: Page) -> String {
             }
             line
         }
-        None => strong(&format!("{cost} a unit, {heat}"), report.audit.passes(), page),
+        None => strong(&figures, report.audit.passes(), page),
     };
-    out.push('\n');
-    if !report.supply.name.is_empty() {
-        let run = report
-            .lines
-            .iter()
-            .map(|l| l.cost().of_run(report.supply.builds))
-            .sum::<crate::units::RunCost>();
-        let units = counted(report.supply.builds, "unit");
-        out.push_str(&format!(
-            "{}, {units}: {}\n",
-            printable(&report.supply.name),
-            money(run.to_string())
-        ));
+    out + "\n" + &run(report) + "\n"
+}
+
+/// Cost and heat of one unit.
+pub(super) fn figures(report: &Report) -> String {
+    let heat = (report.audit.heat_w).map_or("heat unknown".into(), |w| format!("{} W", digits(w)));
+    let cost = money(&report.audit.cost.to_string(), report.currency.as_deref());
+    format!("{cost} a unit, {heat}")
+}
+
+/// What the supply is and what its run costs.
+pub(super) fn run(report: &Report) -> String {
+    if report.supply.name.is_empty() {
+        return String::new();
     }
-    out.push('\n');
-    out
+    let cost = (report.lines.iter())
+        .map(|l| l.cost().of_run(report.supply.builds))
+        .sum::<crate::units::RunCost>();
+    format!(
+        "{}, {}: {}\n",
+        printable(&report.supply.name),
+        counted(report.supply.builds, "unit"),
+        money(&cost.to_string(), report.currency.as_deref())
+    )
 }
 
 /// What the roomiest build costs more than the best one, and how much room it has.

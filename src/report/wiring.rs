@@ -1,7 +1,7 @@
 //! Owns how a build is put together, as text: transformer, section, rail, each with its parts.
 
 use super::Report;
-use super::table::{Page, wrapped};
+use super::page::{Page, wrapped};
 use super::text::{engineering, printable};
 use crate::build::Section;
 use crate::catalogue::Sink;

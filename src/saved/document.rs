@@ -8,7 +8,7 @@ use crate::fault::Fault;
 use crate::suggest::did_you_mean;
 
 /// Keys of the document; those after the first four are written by the tool and not needed.
-const TOP: [&str; 19] = [
+const TOP: [&str; 20] = [
     "supply",
     "transformers",
     "sections",
@@ -28,6 +28,7 @@ const TOP: [&str; 19] = [
     "parts",
     "room",
     "prices",
+    "shelf",
 ];
 const TRANSFORMER: [&str; 2] = ["id", "part"];
 const SECTION: [&str; 13] = [

@@ -31,6 +31,7 @@ pub struct Saved {
     pub catalogue: Option<String>,
     parts: Option<Vec<SavedPart>>,
     currency: Option<String>,
+    objective: Option<String>,
 }
 
 /// Reads a build file.
@@ -80,6 +81,7 @@ pub fn from_value(value: &Value, file: &str) -> Result<Saved, Vec<Fault>> {
         file: file.to_owned(),
         catalogue: text("catalogue").or_else(|| supply.catalogue.clone()),
         currency: text("currency"),
+        objective: text("objective"),
         document,
         supply,
         parts,
@@ -108,6 +110,12 @@ fn saved_parts(document: &Document, parts: &serde_json::Map<String, Value>) -> V
 }
 
 impl Saved {
+    /// The word of what the build was chosen by, if it says.
+    #[must_use]
+    pub fn objective(&self) -> Option<&str> {
+        self.objective.as_deref()
+    }
+
     /// The catalogue that the document carries; `None` for a hand-written build without parts.
     ///
     /// # Errors

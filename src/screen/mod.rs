@@ -18,7 +18,7 @@ pub use feed::Feed;
 pub use plan::{FlowKey, Outlet, Plan, plans};
 pub use reach::Group;
 pub use shelf::Must;
-pub use stop::Stop;
+pub use stop::{Glance, Progress, Stop};
 pub use walk::{Apart, Walk, heat_floor};
 
 /// What is to be least.

@@ -63,7 +63,9 @@ pub struct Room<'c> {
 pub fn roomiest<'c>(question: &Question<'c>, best: Found<'c>, share: Share) -> Result<Room<'c>, Disagreement> {
     let most = share.above(best.key.objective(question.objective));
     let room_of = |found: &Found| {
-        let tightest = audit(question.supply, &found.build).tightest().map(|m| m.check.tightness());
+        let tightest = audit(question.supply, &found.build)
+            .tightest()
+            .map(|m| m.check.tightness());
         tightest.unwrap_or(f64::INFINITY)
     };
     let mut room = Room {

@@ -58,9 +58,8 @@ impl Wish<'_, '_> {
         let question = self.question;
         let most = self.most_of_a_unit() * question.supply.builds;
         let named = |part: &Part| question.with.iter().any(|&(id, _)| id == part.id);
-        let usable = |part: &Part| {
-            !question.without.contains(&part.id) && (part.status != Status::Withdrawn || named(part))
-        };
+        let usable =
+            |part: &Part| !question.without.contains(&part.id) && (part.status != Status::Withdrawn || named(part));
         (question.catalogue.parts().filter(|part| usable(part)))
             .filter_map(|part| Some((part, part.stock.filter(|&stock| stock < most)?)))
             .map(|(part, stock)| Lever::of_stock(part, stock, most))
@@ -173,7 +172,11 @@ impl Wish<'_, '_> {
         let mut places: BTreeSet<i64> = BTreeSet::new();
         for stock in self.question.catalogue.parts().filter_map(|p| p.stock) {
             let enough = (1..=self.most_of_a_unit()).map(|qty| stock / qty);
-            places.extend(enough.filter(|&n| (1..builds).contains(&n)).map(|n| lever.place_below(n)));
+            places.extend(
+                enough
+                    .filter(|&n| (1..builds).contains(&n))
+                    .map(|n| lever.place_below(n)),
+            );
         }
         let places: Vec<i64> = places.into_iter().filter(|&p| (1..=lever.last).contains(&p)).collect();
         let found = match self.nearest_run(lever, &places)? {

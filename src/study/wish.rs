@@ -64,7 +64,9 @@ impl Wish<'_, '_> {
         }
         // The audit has passed the build there; the search must find one too.
         match self.probe(lever, passing.place, fails)? {
-            Holds(Passing { solved: Some(solved), .. }) => Ok(Holds(solved)),
+            Holds(Passing {
+                solved: Some(solved), ..
+            }) => Ok(Holds(solved)),
             Open => Ok(Open),
             Holds(_) | Fails => Err(Disagreement {
                 build: passing.text,
@@ -116,7 +118,9 @@ impl Wish<'_, '_> {
                 let changed = lever.supply(supply, place);
                 changed.is_some_and(|supply| self.short_in(&supply, build).is_empty() && self.wanted(&supply, build))
             }
-            Moves::Stock(id) => short.iter().all(|&(part, need)| part == id && lever.count(place) >= need),
+            Moves::Stock(id) => short
+                .iter()
+                .all(|&(part, need)| part == id && lever.count(place) >= need),
         };
         // Of more stock the audit says nothing more.
         if !holds(place) || matches!(lever.moves, Moves::Stock(_)) && !self.wanted(supply, build) {
@@ -183,7 +187,10 @@ impl Wish<'_, '_> {
             return Ok(Open);
         }
         let Outcome { builds, proof, .. } = optimise(&question)?;
-        let good = |found: &&Found| self.most.is_none_or(|most| found.key.objective(question.objective) <= most);
+        let good = |found: &&Found| {
+            self.most
+                .is_none_or(|most| found.key.objective(question.objective) <= most)
+        };
         Ok(match (builds.first().filter(good), proof) {
             (Some(found), Proof::Proved) => Holds(make(found, question.objective)),
             // How good the best one is remains open, which matters only where that is asked.

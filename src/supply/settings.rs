@@ -169,7 +169,13 @@ fn unknown(top: &[Entry], table: &str, key: &str) -> Wrong {
             .or_else(same_key)
     };
     let hint = hint.unwrap_or_else(|| {
-        let example = ["the keys of the supply file: builds", "ambient.high", "rail.NAME.ripple"].map(str::to_owned).to_vec();
+        let example = [
+            "the keys of the supply file: builds",
+            "ambient.high",
+            "rail.NAME.ripple",
+        ]
+        .map(str::to_owned)
+        .to_vec();
         let known = if table.is_empty() || beside.is_empty() {
             example
         } else {

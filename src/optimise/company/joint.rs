@@ -2,8 +2,7 @@
 
 use std::collections::BTreeMap;
 
-use crate::audit::{Limit, whole};
-use crate::build::Build;
+use crate::audit::{Check, Limit, Margin, audit, whole};
 use crate::catalogue::{Catalogue, Part, PartId};
 use crate::optimise::{Disagreement, Proof, Question, optimise};
 use crate::screen::Objective;
@@ -18,9 +17,35 @@ pub struct Joint {
     pub part: Option<String>,
 }
 
-/// Each limit of cost, heat and stock without which the supply has a build; if there is none, each that is among the
-/// fewest that must go together. And whether all of that is proved.
-pub(super) fn joint(question: &Question) -> Result<(Vec<Joint>, bool), Disagreement> {
+impl Joint {
+    /// The limit's word, stock with its part.
+    #[must_use]
+    pub fn words(&self) -> String {
+        match &self.part {
+            Some(part) => format!("{} {part}", self.limit.word()),
+            None => self.limit.word().to_owned(),
+        }
+    }
+}
+
+/// What cannot hold together.
+#[derive(Debug, Clone, Default, PartialEq)]
+pub struct Together {
+    /// Each limit of cost, heat and stock without which the supply has a build; if there is none, each that is among the
+    /// fewest that must go together.
+    pub joint: Vec<Joint>,
+    /// What fails in the best build without the first of them.
+    pub failing: Vec<Margin>,
+    /// Whether all of that is proved.
+    pub proved: bool,
+}
+
+/// What stands between rails that each pass alone, for a question to which [`optimise`] has proved that there is no
+/// build.
+///
+/// # Errors
+/// When the audit rejects a build that the search found with a limit dropped: a bug to report.
+pub fn joint(question: &Question) -> Result<Together, Disagreement> {
     let caps = &question.supply.caps;
     let mut limits = Vec::new();
     limits.extend(caps.cost.map(|_| Limit::Cost));
@@ -34,11 +59,15 @@ pub(super) fn joint(question: &Question) -> Result<(Vec<Joint>, bool), Disagreem
     );
     let mut proved = true;
     let mut found: Vec<Joint> = Vec::new();
+    let mut first: Option<Vec<Margin>> = None;
     for size in 1..=limits.len() {
         for set in subsets(&limits, size) {
             let ask = |lifted: &dyn Fn(&Part) -> bool| Changed::new(question, &set, lifted).overdrawn(question);
             let short = match ask(&|_| true)? {
-                Answer::Short(short) => short,
+                Answer::Short(short, failing) => {
+                    first.get_or_insert(failing);
+                    short
+                }
                 Answer::None => continue,
                 Answer::Open => {
                     proved = false;
@@ -51,7 +80,7 @@ pub(super) fn joint(question: &Question) -> Result<(Vec<Joint>, bool), Disagreem
             let mut enough = Vec::new();
             for &part in short.iter().filter(|_| short.len() > 1) {
                 match ask(&|p| p.id == part)? {
-                    Answer::Short(_) => enough.push(part),
+                    Answer::Short(..) => enough.push(part),
                     Answer::None => {}
                     Answer::Open => proved = false,
                 }
@@ -69,7 +98,11 @@ pub(super) fn joint(question: &Question) -> Result<(Vec<Joint>, bool), Disagreem
     }
     found.sort();
     found.dedup();
-    Ok((found, proved))
+    Ok(Together {
+        joint: found,
+        failing: first.unwrap_or_default(),
+        proved,
+    })
 }
 
 /// All subsets of that size, in order.
@@ -82,8 +115,8 @@ fn subsets(limits: &[Limit], size: usize) -> Vec<Vec<Limit>> {
 }
 
 enum Answer {
-    /// There is a build; it takes more of these parts than there are.
-    Short(Vec<PartId>),
+    /// There is a build; it takes more of these parts than there are, and fails these limits.
+    Short(Vec<PartId>, Vec<Margin>),
     /// There is none.
     None,
     /// Stopped before either.
@@ -136,15 +169,27 @@ impl Changed {
                 Proof::Open { .. } => Answer::Open,
             });
         };
-        Ok(Answer::Short(short(question, &best.build)))
+        let verdict = audit(&self.supply, &best.build);
+        let mut failing = Vec::new();
+        let mut whole = |of: &str, check: Option<Check>| {
+            failing.extend(check.filter(|c| !c.met()).map(|check| Margin {
+                of: of.to_owned(),
+                check,
+            }));
+        };
+        whole("supply", whole::cost(question.supply, verdict.cost));
+        whole("supply", whole::heat(question.supply, verdict.heat_w.ok_or("heat")));
+        // The rows as the question has them, with their stock.
+        let stock: BTreeMap<PartId, &Part> = question.catalogue.parts().map(|p| (p.id, p)).collect();
+        let mut short = Vec::new();
+        for line in best.build.lines(question.supply) {
+            let part = stock.get(&line.part.id).copied();
+            let check = part.and_then(|part| whole::stock(question.supply, part, line.qty));
+            if check.is_some_and(|c| !c.met()) {
+                short.push(line.part.id);
+            }
+            whole(&line.part.name, check);
+        }
+        Ok(Answer::Short(short, failing))
     }
-}
-
-fn short(question: &Question, build: &Build) -> Vec<PartId> {
-    let stock: BTreeMap<PartId, &Part> = question.catalogue.parts().map(|p| (p.id, p)).collect();
-    (build.lines(question.supply).iter())
-        .filter_map(|line| Some((stock.get(&line.part.id)?, line.qty)))
-        .filter(|(part, qty)| whole::stock(question.supply, part, *qty).is_some_and(|c| !c.met()))
-        .map(|(part, _)| part.id)
-        .collect()
 }

@@ -55,6 +55,24 @@ impl Company {
     }
 }
 
+/// A build of one rail alone, by places in its aisle.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub(super) struct Choice {
+    pub(super) source: usize,
+    pub(super) bank: usize,
+    pub(super) rectifier: usize,
+    pub(super) device: usize,
+    pub(super) rectifier_sink: Option<usize>,
+    pub(super) sink: Option<usize>,
+}
+
+/// The one part that a search is for, with the build that its best company is.
+#[derive(Debug)]
+struct Watch {
+    part: PartId,
+    choice: Option<Choice>,
+}
+
 /// The best so far of every part, and of each rail as if it were one.
 pub(super) struct Ledger {
     best: Vec<Option<Company>>,
@@ -62,6 +80,7 @@ pub(super) struct Ledger {
     need: Vec<f64>,
     parts: usize,
     changes: u64,
+    watch: Option<Watch>,
 }
 
 impl Ledger {
@@ -71,7 +90,17 @@ impl Ledger {
             need: vec![f64::NEG_INFINITY; parts + rails],
             parts,
             changes: 0,
+            watch: None,
         }
+    }
+
+    /// For one part alone: nothing else is of interest, and the build itself is kept.
+    pub(super) fn watching(part: PartId, parts: usize, rails: usize) -> Ledger {
+        let mut ledger = Ledger::new(parts, rails);
+        ledger.need.fill(f64::INFINITY);
+        ledger.need[part.0 as usize] = f64::NEG_INFINITY;
+        ledger.watch = Some(Watch { part, choice: None });
+        ledger
     }
 
     /// The entry that stands for a rail: its best build of all.
@@ -91,18 +120,28 @@ impl Ledger {
     }
 
     /// A build with that part.
-    pub(super) fn offer(&mut self, part: PartId, company: Company) {
+    pub(super) fn offer(&mut self, part: PartId, company: Company, choice: Choice) {
         let place = part.0 as usize;
         if company.tightness > self.need[place] {
             self.need[place] = if company.met { f64::INFINITY } else { company.tightness };
             self.best[place] = Some(company);
             self.changes += 1;
+            if let Some(watch) = self.watch.as_mut().filter(|watch| watch.part == part) {
+                watch.choice = Some(choice);
+            }
         }
     }
 
     /// Whether the best build of a rail is met.
     pub(super) fn passes(&self, rail: usize) -> bool {
         self.best[self.parts + rail].is_some_and(|c| c.met)
+    }
+
+    /// What the part that was watched found since the last call: its best company so far, if that became better.
+    pub(super) fn watched(&mut self) -> Option<(Company, Choice)> {
+        let watch = self.watch.as_mut()?;
+        let choice = watch.choice.take()?;
+        self.best[watch.part.0 as usize].map(|company| (company, choice))
     }
 
     /// The best by part: of those which nothing that is still `open`, at best so tight, can better.

@@ -5,6 +5,7 @@
 //! least tightness is greatest. Invariant: exact, by the audit's own functions; bounds only say what need not be solved.
 
 mod aisle;
+mod alone;
 mod bound;
 mod cooling;
 mod joint;
@@ -14,7 +15,8 @@ mod search;
 mod settle;
 mod worth;
 
-pub use joint::Joint;
+pub use alone::{Alone, best_company};
+pub use joint::{Joint, Together, joint};
 pub use ledger::Company;
 
 use std::collections::BTreeMap;
@@ -110,15 +112,18 @@ pub fn rejections(question: &Question) -> Result<Reasons, Disagreement> {
         .collect();
     rejected.sort_by(|a, b| (a.slot, b.count, a.limit).cmp(&(b.slot, a.count, b.limit)));
     // A rail that does not pass alone is reason enough.
-    let (joint, proved) = if companies.passes.iter().all(|&passes| passes) {
-        joint::joint(question)?
+    let together = if companies.passes.iter().all(|&passes| passes) {
+        joint(question)?
     } else {
-        (Vec::new(), true)
+        Together {
+            proved: true,
+            ..Together::default()
+        }
     };
     Ok(Reasons {
         rejected,
-        joint,
-        complete: companies.complete && proved,
+        joint: together.joint,
+        complete: companies.complete && together.proved,
     })
 }
 

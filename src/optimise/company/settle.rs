@@ -1,7 +1,7 @@
 //! Owns the exact verdict on one section with each of its devices and sinks, by the audit's functions.
 
 use super::bound::{Bound, Losses, SLACK};
-use super::ledger::Company;
+use super::ledger::{Choice, Company};
 use super::outlook::Fed;
 use super::search::Search;
 use super::worth::Spot;
@@ -240,8 +240,8 @@ impl Search<'_, '_> {
             heating.map(|h| behind.stage.junction(site, Corner::High, h.pass_w, part(sink)))
         });
         let cost = aisle.section_price(fed.source, fed.bank, rectifier) + behind.price;
-        let [transformer, can, rail, diode] = self.parts(fed, rectifier);
-        let parts = [transformer, can, rail, diode, behind.stage.device.part.id];
+        let [transformer, can, diode, rail] = self.parts(fed, rectifier);
+        let parts = [transformer, can, diode, rail, behind.stage.device.part.id];
         let ids = |sink: Option<usize>| sink.map(|k| aisle.sinks[k].part.part.id);
         for &(j, under_rectifier) in &rectifier_sinks {
             for &(k, under_device) in &sinks {
@@ -267,8 +267,16 @@ impl Search<'_, '_> {
                     build = build.and_all(whole::stock(supply, sink, pieces));
                 }
                 build = build.and_all(whole::cost(supply, cost));
+                let choice = Choice {
+                    source: fed.source,
+                    bank: fed.bank,
+                    rectifier,
+                    device,
+                    rectifier_sink: j,
+                    sink: k,
+                };
                 for &id in parts.iter().chain(used.iter().flatten()) {
-                    self.ledger.offer(id, build);
+                    self.ledger.offer(id, build, choice);
                 }
             }
         }
