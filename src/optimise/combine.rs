@@ -3,7 +3,8 @@
 use super::Question;
 use super::best::{Bill, Wanted};
 use super::frame_build::{Fed, Judge, build, heat_w};
-use super::lists::{Lists, Ready};
+use super::lists::Lists;
+use super::view::Ready;
 use crate::audit::{Site, compared, transformer, whole};
 use crate::catalogue::Part;
 use crate::screen::{Counts, Feed};

@@ -11,7 +11,7 @@ use std::collections::BTreeMap;
 use good_lp::solvers::{SolutionStatus, WithTimeLimit};
 use good_lp::{Expression, ProblemVariables, ResolutionError, Solution, SolverModel, Variable, constraint, variable};
 
-use super::lists::Ready;
+use super::view::Ready;
 use crate::catalogue::{Part, PartId};
 use crate::screen::{Objective, Plan};
 use crate::supply::{Path, Supply};

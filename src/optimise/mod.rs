@@ -14,6 +14,7 @@ mod milp;
 mod rivals;
 mod search;
 mod tighten;
+mod view;
 
 pub use best::{Found, Key};
 pub use company::{

@@ -7,7 +7,7 @@
 //! the loads on its primary (so both must draw the same), and A's own low corner, which must hold beside the most that
 //! the other sections can draw.
 
-use super::lists::Ready;
+use super::view::Ready;
 use crate::catalogue::Part;
 use crate::screen::{Feed, Group, Outlet};
 

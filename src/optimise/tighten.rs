@@ -13,7 +13,7 @@
 //! the mean over the parts that could gain, so each part may be charged its share and the best S_p found part by part.
 //! A charge on heat adds the same to an entry whatever the others take, as fitted values do.
 
-use super::lists::Ready;
+use super::view::Ready;
 use crate::catalogue::Part;
 use crate::screen::{Weights, heat_floor};
 use crate::units::Money;
