@@ -47,33 +47,45 @@ fn blocks<'a>(text: &'a str, language: &str) -> Vec<&'a str> {
         .collect()
 }
 
+/// A command line as a shell parts it: double quotes keep spaces together.
+fn words(line: &str) -> Vec<String> {
+    let mut words = vec![String::new()];
+    let mut quoted = false;
+    for letter in line.chars() {
+        match letter {
+            '"' => quoted = !quoted,
+            ' ' if !quoted => words.push(String::new()),
+            other => words.last_mut().unwrap().push(other),
+        }
+    }
+    words
+}
+
 #[test]
 fn the_readme_s_commands_run() {
     let readme = fs::read_to_string("README.md").unwrap();
     // The README saves a build there; with CARGO_TARGET_DIR set it may not exist yet.
     fs::create_dir_all("target").unwrap();
     let mut commands = 0;
-    let mut first = String::new();
-    for line in blocks(&readme, "sh").iter().flat_map(|block| block.lines()) {
-        if line == "cargo test" {
-            continue; // this one
+    let mut last = String::new();
+    // Blocks are the odd pieces; what a command prints is shown in the block after it.
+    for block in readme.split("```").skip(1).step_by(2) {
+        let (language, text) = block.split_once('\n').unwrap();
+        for line in text.lines().filter(|&line| language == "sh" && line != "cargo test") {
+            let arguments = line
+                .strip_prefix("cargo run --release -- ")
+                .unwrap_or_else(|| panic!("{line}"));
+            last = binrail(&words(arguments).iter().map(String::as_str).collect::<Vec<_>>());
+            commands += 1;
         }
-        let arguments = line
-            .strip_prefix("cargo run --release -- ")
-            .unwrap_or_else(|| panic!("{line}"));
-        let output = binrail(&arguments.split(' ').collect::<Vec<_>>());
-        if first.is_empty() {
-            first = output;
+        if language == "text" {
+            assert!(
+                last.starts_with(text),
+                "the README shows\n{text}\nbut the command prints\n{last}"
+            );
         }
-        commands += 1;
     }
-    assert!(commands >= 7, "{commands}");
-    for shown in blocks(&readme, "text") {
-        assert!(
-            first.starts_with(shown),
-            "the README shows\n{shown}\nbut the command prints\n{first}"
-        );
-    }
+    assert!(commands >= 18, "{commands}");
     let example = fs::read_to_string("examples/tide-gauge/supply.toml").unwrap();
     for shown in blocks(&readme, "toml") {
         assert!(example.ends_with(shown), "{shown}");

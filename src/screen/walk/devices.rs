@@ -7,6 +7,9 @@ use crate::audit::{Corner, Raw, Stage};
 use crate::screen::Counts;
 use crate::screen::solved::Solved;
 
+/// Loads of one section whose steady states are kept.
+const KEPT_LOADS: usize = 2;
+
 impl<'a, 'c> Walk<'a, 'c> {
     fn stage(&self, rail: usize, place: usize) -> &'a Stage<'c> {
         &self.group.shelf.stages[rail][place]
@@ -87,6 +90,10 @@ impl<'a, 'c> Walk<'a, 'c> {
             if let Some(losses) = solved[at].losses(self.site, &raw, &stages, counts) {
                 stack = self.stack(pair, bank, &stages, &losses);
             }
+        }
+        // The first is the least load, the last was just used; those between would only fill the memory.
+        if solved.len() > KEPT_LOADS {
+            solved.remove(1);
         }
         self.sections[section].solved = solved;
         stack
