@@ -237,10 +237,10 @@ fn documents_hold_what_is_asked() {
     assert!(shelf["units"].is_u64() && shelf["first"].is_string());
     check(&["audit", &path], 0, "passes: all ", "");
 
-    let each = document(&["rank", TWO_RAILS, "--each", "sink"], 0);
+    let each = document(&["rank", TWO_RAILS, "--each", "rectifier"], 0);
     assert_eq!(
         (&each["schema"], &each["slot"]),
-        (&"binrail.rank-each/1".into(), &"sink".into())
+        (&"binrail.rank-each/1".into(), &"rectifier".into())
     );
     let rows = each["parts"].as_array().unwrap();
     let costs: Vec<f64> = rows.iter().filter_map(|row| row["extra_cost"].as_f64()).collect();
@@ -354,7 +354,7 @@ fn the_order_of_rows_changes_nothing() {
     }
     let sink = part(&build, "sink");
     for call in [
-        vec!["rank", SUPPLY, "--each", "sink"],
+        vec!["rank", SUPPLY, "--each", "rectifier"],
         vec!["swap", &path, "--without", &sink],
         vec!["swap", &path, "--each"],
         vec!["why", SUPPLY, "Z4-2304"],

@@ -109,15 +109,16 @@ fn the_table_of_columns_is_the_code_s() {
 #[test]
 fn the_table_of_keys_is_the_code_s() {
     let head = "# The examples, and every key of a supply file\n\n\
-        Three supplies of the ferry landing of Quellsund, an invented place: `tide-gauge` (one rail, 230 V 50 Hz),\n\
-        `ramp-beacon` (two rails, 120 V 60 Hz) and `berth-console` (+3.3, +5, +15 and -15 V, 230 V 50 Hz). Beside each\n\
+        Four supplies of the ferry landing of Quellsund, an invented place: `tide-gauge` (one rail, 230 V 50 Hz),\n\
+        `ramp-beacon` (two rails, 120 V 60 Hz), `fog-signal` (two rails that share\n\
+        a reservoir) and `berth-console` (+3.3, +5, +15 and -15 V, 230 V 50 Hz). Beside each\n\
         stands what `pick` prints for it. The table is made from the code's own, which also reads the files.\n\n";
     same_as_file("examples/README.md", &format!("{head}{}", binrail::supply::markdown()));
 }
 
 #[test]
 fn the_examples_print_what_they_printed() {
-    for name in ["tide-gauge", "ramp-beacon", "berth-console"] {
+    for name in ["tide-gauge", "ramp-beacon", "fog-signal", "berth-console"] {
         let supply = format!("examples/{name}/supply.toml");
         same_as_file(
             &format!("examples/{name}/expected.txt"),

@@ -40,11 +40,14 @@ use oracle_run::{OBJECTIVES, Tally, over, question};
 use own_rules::{Bill, apart, price};
 use small_case::Case;
 
-fn key(found: &Found) -> (i64, i64, String) {
+/// Cost, heat, text.
+type Key = (i64, i64, String);
+
+fn key(found: &Found) -> Key {
     (found.key.cost, found.key.heat, found.key.text.clone())
 }
 
-fn key_of(judged: &Judged) -> (i64, i64, String) {
+fn key_of(judged: &Judged) -> Key {
     (judged.cost, judged.heat, judged.fields.join("\0"))
 }
 
@@ -89,17 +92,17 @@ fn the_best_build_around_each_part_is_that_of_brute_force() {
                     };
                     brute.list(&catalogue, objective, &wish).first().map(|j| key_of(j))
                 };
-                let mut wanted: Vec<(&str, Option<(i64, i64, String)>)> = (catalogue.parts().filter(usable))
+                let mut wanted: Vec<(&str, Option<Key>)> = (catalogue.parts().filter(usable))
                     .map(|p| (p.name.as_str(), with(p.id)))
                     .collect();
-                let order = |key: &Option<(i64, i64, String)>| {
+                let order = |key: &Option<Key>| {
                     key.clone().map_or((1, 0, 0, String::new()), |(cost, heat, text)| {
                         let (first, second) = objective.order(cost, heat);
                         (0, first, second, text)
                     })
                 };
                 wanted.sort_by_key(|(_, key)| order(key));
-                let got: Vec<(&str, Option<(i64, i64, String)>)> = got
+                let got: Vec<(&str, Option<Key>)> = got
                     .iter()
                     .map(|each| (each.part.name.as_str(), each.outcome.builds.first().map(key)))
                     .collect();

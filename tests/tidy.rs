@@ -135,3 +135,11 @@ fn the_schema_lists_every_limit() {
     let limits: Vec<&str> = binrail::audit::Limit::ALL.iter().map(|l| l.word()).collect();
     assert_eq!(listed, limits);
 }
+
+#[test]
+fn the_schema_lists_every_place() {
+    let schema: serde_json::Value = serde_json::from_str(binrail::report::schema::DOCUMENTS).unwrap();
+    let listed = &schema["$defs"]["swap"]["properties"]["changes"]["items"]["properties"]["place"]["enum"];
+    let listed: Vec<&str> = listed.as_array().unwrap().iter().map(|v| v.as_str().unwrap()).collect();
+    assert_eq!(listed, binrail::build::Place::ALL.map(binrail::build::Place::word));
+}

@@ -4,7 +4,6 @@ use serde_json::{Value, json};
 
 use super::page::{Page, counted, headline, set, sheet};
 use super::table::{cautions, tightest};
-use super::text::digits;
 use super::verdict::run;
 use super::{Report, csv, json as document};
 
@@ -50,7 +49,7 @@ pub fn table(reports: &[Report], proved: bool, page: Page) -> String {
         table.add_row([
             (place + 1).to_string(),
             report.audit.cost.to_string(),
-            report.audit.heat_w.map_or("?".into(), digits),
+            report.audit.heat_w.map_or("?".into(), |w| format!("{w:.3}")),
             tightest(report),
             before.map_or_else(|| report.parts(), |before| report.against(before)),
         ]);

@@ -37,7 +37,12 @@ pub(super) fn table(shelf: &Shelf, report: &Report, page: Page) -> String {
         _ => "No part of this build is limited by its stock.".to_owned(),
     };
     let mut out = String::from("\nShelf\n") + &wrapped(&says, "", "", page.width);
-    let mut table = sheet(&["Part", "Units", "Drop-ins", "Cheaper to buy"], &[1], &[2, 3], page);
+    let mut header = vec!["Part", "Units", "Drop-ins"];
+    let more = shelf.lines.iter().any(|line| line.buy.is_some());
+    if more {
+        header.push("Cheaper to buy");
+    }
+    let mut table = sheet(&header, &[1], &[2, 3], page);
     for line in &shelf.lines {
         let mut names: Vec<String> = line.drop_ins.iter().take(NAMED).map(|name| printable(name)).collect();
         if line.drop_ins.len() > NAMED {
@@ -47,7 +52,7 @@ pub(super) fn table(shelf: &Shelf, report: &Report, page: Page) -> String {
             let saves = money(&saves.to_string(), report.currency.as_deref());
             format!("{pieces} pieces: saves {saves}")
         });
-        table.add_row([
+        let mut row = vec![
             printable(&line.part),
             line.units.map_or("-".into(), |units| units.to_string()),
             if names.is_empty() {
@@ -55,8 +60,11 @@ pub(super) fn table(shelf: &Shelf, report: &Report, page: Page) -> String {
             } else {
                 names.join(", ")
             },
-            buy.unwrap_or_default(),
-        ]);
+        ];
+        if more {
+            row.push(buy.unwrap_or_default());
+        }
+        table.add_row(row);
     }
     out.push_str(&set(&table));
     out

@@ -25,20 +25,21 @@ use crate::catalogue::PartId;
 use crate::optimise::{Question, best_company};
 use crate::supply::{Caps, Supply};
 
-/// Whether it is sure that no build passes with a part, because no rail alone does: soon known, where a search that is
-/// forced to use the part has to look at everything before it gives up. Only where no rail shares anything: a neighbour's
-/// load may take heat off a device. Caps on cost and heat are left out, since shared price breaks may bring a whole
-/// supply below what one rail alone costs.
+/// Whether it is sure that no build passes with a sink, because no rail alone does: soon known, where a search that is
+/// forced to use the sink has to look at everything before it gives up (what must hold any other part is a small search).
+/// Only where no rail shares anything: a neighbour's load may take heat off a device. Caps on cost and heat are left out,
+/// since shared price breaks may bring a whole supply below what one rail alone costs.
 fn hopeless(question: &Question, part: PartId) -> bool {
     let supply = question.supply;
-    if supply.rails.len() > 1 && !supply.share_never {
+    let sink = question.catalogue.sinks.iter().any(|sink| sink.part.id == part);
+    if !sink || supply.rails.len() > 1 && !supply.share_never {
         return false;
     }
     let uncapped = Supply {
         caps: Caps {
             cost: None,
             heat_w: None,
-            ..supply.caps.clone()
+            ..supply.caps
         },
         ..supply.clone()
     };
