@@ -40,8 +40,17 @@ use small_case::Case;
 fn with(case: &Case, requirement: &str, value: &str) -> Option<Case> {
     let mut case = case.clone();
     match requirement.strip_prefix("stock.") {
-        Some(part) => case.rows.iter_mut().find(|row| row.name == part).unwrap().set("stock", value),
-        None => case.supply = changed(&case.supply(), &[format!("{requirement}={value}")]).ok()?.content,
+        Some(part) => case
+            .rows
+            .iter_mut()
+            .find(|row| row.name == part)
+            .unwrap()
+            .set("stock", value),
+        None => {
+            case.supply = changed(&case.supply(), &[format!("{requirement}={value}")])
+                .ok()?
+                .content
+        }
     }
     Some(case)
 }
@@ -62,13 +71,18 @@ fn number(text: &str) -> (f64, &str) {
 /// One digit nearer to where the requirement comes from, but not past it; its text.
 fn nearer(relaxation: &Relaxation) -> String {
     let ((from, unit), (to, _)) = (number(&relaxation.from), number(&relaxation.to));
-    let whole = matches!(relaxation.requirement.as_str(), "builds" | "caps.cans") || relaxation.requirement.starts_with("stock.");
+    let whole = matches!(relaxation.requirement.as_str(), "builds" | "caps.cans")
+        || relaxation.requirement.starts_with("stock.");
     let digit = |value: f64| {
         let step = 10f64.powi(value.abs().log10().floor() as i32 - 2);
         if whole { step.max(1.0) } else { step }
     };
     // Rising from below a power of ten the digit is the smaller one.
-    let step = if from.abs() < to.abs() { digit(to * (1.0 - 1e-9)) } else { digit(to) };
+    let step = if from.abs() < to.abs() {
+        digit(to * (1.0 - 1e-9))
+    } else {
+        digit(to)
+    };
     let back = to + step.copysign(from - to);
     let past = (from - back) * (from - to) <= 0.0;
     if past {
@@ -115,7 +129,9 @@ fn far_ends(case: &Case) -> Vec<(String, Vec<String>)> {
         all.extend(rail.dip_s.map(|_| (key("dip"), one("1 us"))));
     }
     let limited = case.catalogue();
-    let limited = limited.parts().filter(|p| p.stock.is_some() && p.status != Status::Withdrawn);
+    let limited = limited
+        .parts()
+        .filter(|p| p.stock.is_some() && p.status != Status::Withdrawn);
     all.extend(limited.map(|p| (format!("stock.{}", p.name), one("1000000"))));
     all
 }
@@ -130,11 +146,20 @@ fn squeezed(case: &Case) -> Option<Case> {
     let (requirement, value) = match case.seed % 8 {
         0 => ("ambient.high".to_owned(), format!("{} degC", 55 + random.below(35))),
         1 => (key("ripple"), format!("{:.3} mV", random.decades(0.01, 2.0))),
-        2 => ("caps.cost".into(), format!("{:.2}", best(Objective::Cost)? * random.between(0.7, 0.99))),
+        2 => (
+            "caps.cost".into(),
+            format!("{:.2}", best(Objective::Cost)? * random.between(0.7, 0.99)),
+        ),
         3 => (key("current"), format!("{:.2} A", amps * random.between(1.3, 2.5))),
-        4 => ("builds".into(), (case.supply().builds * (2 + random.below(40) as u64)).to_string()),
+        4 => (
+            "builds".into(),
+            (case.supply().builds * (2 + random.below(40) as u64)).to_string(),
+        ),
         5 => (key("dip"), format!("{} ms", 20 + random.below(60))),
-        6 => ("caps.heat".into(), format!("{:.3} W", best(Objective::Heat)? * random.between(0.8, 0.99))),
+        6 => (
+            "caps.heat".into(),
+            format!("{:.3} W", best(Objective::Heat)? * random.between(0.8, 0.99)),
+        ),
         _ => ("ageing.life".into(), format!("{} h", 30_000 * (1 + random.below(6)))),
     };
     let case = with(case, &requirement, &value)?;
@@ -176,8 +201,14 @@ fn relaxations_are_those_of_brute_force() {
                 None => assert!(!values.iter().any(helps), "{requirement} would help\n{case}"),
             }
         }
-        let known: Vec<String> = far_ends(&case).into_iter().map(|(requirement, _)| requirement).collect();
-        assert!(relaxed.list.iter().all(|r| known.contains(&r.requirement)), "{relaxed:?}\n{case}");
+        let known: Vec<String> = far_ends(&case)
+            .into_iter()
+            .map(|(requirement, _)| requirement)
+            .collect();
+        assert!(
+            relaxed.list.iter().all(|r| known.contains(&r.requirement)),
+            "{relaxed:?}\n{case}"
+        );
     });
     println!("{tally:#?}");
     for (what, least) in [("cases", 20), ("relaxations", 30), ("hopeless", 1)] {
@@ -188,8 +219,20 @@ fn relaxations_are_those_of_brute_force() {
 /// The kind of a requirement, for the tally.
 fn word(requirement: &str) -> &'static str {
     let kinds = [
-        "ambient", "mains", "margins", "ageing", "caps.cost", "caps.heat", "caps.height", "caps.cans", "builds", "stock",
-        "ripple", "current", "accuracy", "dip",
+        "ambient",
+        "mains",
+        "margins",
+        "ageing",
+        "caps.cost",
+        "caps.heat",
+        "caps.height",
+        "caps.cans",
+        "builds",
+        "stock",
+        "ripple",
+        "current",
+        "accuracy",
+        "dip",
     ];
     let last = requirement.rsplit('.').next().unwrap();
     let found = kinds.into_iter().find(|k| *k == last || requirement.starts_with(k));
@@ -214,17 +257,30 @@ fn prices_are_those_of_brute_force() {
             tally.add("prices", found.list.len());
             let saves = |requirement: &str, value: &str| {
                 let changed = with(case, requirement, value);
-                changed.and_then(|case| least(&case, objective)).map_or(0, |value| best - value)
+                changed
+                    .and_then(|case| least(&case, objective))
+                    .map_or(0, |value| best - value)
             };
             for price in &found.list {
                 let r = &price.relaxation;
                 tally.add(word(&r.requirement), 1);
-                assert_eq!(saves(&r.requirement, &r.to), price.saves, "{price:?} by {objective:?}\n{case}");
+                assert_eq!(
+                    saves(&r.requirement, &r.to),
+                    price.saves,
+                    "{price:?} by {objective:?}\n{case}"
+                );
                 assert!(price.saves > 0, "{price:?}");
-                assert!(saves(&r.requirement, &nearer(r)) <= 0, "{price:?} by {objective:?}\n{case}");
+                assert!(
+                    saves(&r.requirement, &nearer(r)) <= 0,
+                    "{price:?} by {objective:?}\n{case}"
+                );
             }
             for (requirement, values) in far_ends(case) {
-                if found.list.iter().any(|price| price.relaxation.requirement == requirement) {
+                if found
+                    .list
+                    .iter()
+                    .any(|price| price.relaxation.requirement == requirement)
+                {
                     continue;
                 }
                 let helps = values.iter().any(|value| saves(&requirement, value) > 0);

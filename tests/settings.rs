@@ -1,5 +1,5 @@
 //! Settings: every key of a supply can be set from outside its file, is read as if it stood there, and bad ones are told.
-#![allow(clippy::unwrap_used)]
+#![allow(clippy::unwrap_used, clippy::float_cmp)] // settings are read exactly
 
 use std::fs;
 
@@ -38,7 +38,10 @@ fn read(settings: &[&str]) -> Result<Supply, Vec<String>> {
     let settings: Vec<String> = settings.iter().map(|s| (*s).to_owned()).collect();
     let path = path.display().to_string();
     let told = |faults: Vec<binrail::fault::Fault>| {
-        faults.iter().map(|f| f.to_string().replace(&path, "supply.toml")).collect()
+        faults
+            .iter()
+            .map(|f| f.to_string().replace(&path, "supply.toml"))
+            .collect()
     };
     read_with(path.as_ref(), &settings).map_err(told)
 }
@@ -119,7 +122,9 @@ fn every_key_can_be_set() {
             };
             let told = match key.form {
                 Form::Words(_) => table[key.name].to_string(),
-                _ => table[key.name].as_str().map_or_else(|| table[key.name].to_string(), str::to_owned),
+                _ => table[key.name]
+                    .as_str()
+                    .map_or_else(|| table[key.name].to_string(), str::to_owned),
             };
             assert_eq!(told, value, "{path}");
             if key.name != "name" && !matches!(key.form, Form::Words(_)) {
@@ -134,13 +139,19 @@ fn every_key_can_be_set() {
 #[test]
 fn later_settings_win_and_absent_tables_come_into_being() {
     let supply = read(&["caps.heat=30 W", "builds=7", "caps.heat=20 W", "ageing.esr_rise=1"]).unwrap();
-    assert_eq!((supply.caps.heat_w, supply.builds, supply.ageing.esr_rise), (Some(20.0), 7, 1.0));
+    assert_eq!(
+        (supply.caps.heat_w, supply.builds, supply.ageing.esr_rise),
+        (Some(20.0), 7, 1.0)
+    );
     let supply = read(&["rail.logic.aux-2 = b.ripple=6 mV", "rail.logic.ripple=\"7 mV\""]).unwrap();
     assert_eq!(supply.rails[0].ripple_v, Some(0.007));
     assert_eq!(supply.rails[1].ripple_v, Some(0.006));
     // A name that is set counts from there on.
     let supply = read(&["rail.logic.name=display", "rail.display.dip=10 ms"]).unwrap();
-    assert_eq!((supply.rails[0].name.as_str(), supply.rails[0].dip_s), ("display", Some(0.01)));
+    assert_eq!(
+        (supply.rails[0].name.as_str(), supply.rails[0].dip_s),
+        ("display", Some(0.01))
+    );
 }
 
 #[test]
@@ -162,30 +173,72 @@ fn a_setting_of_the_mains_takes_the_place_of_the_other_form() {
     assert_eq!(said("ageing.life").as_deref(), Some("20000 h"));
     assert_eq!(said("caps.cans").as_deref(), Some("3"));
     assert_eq!(said("rail.logic.aux-2 = b.ripple").as_deref(), Some("5 mV"));
-    assert_eq!((said("caps.cost"), said("rail.logic.ripple"), said("no.such")), (None, None, None));
+    assert_eq!(
+        (said("caps.cost"), said("rail.logic.ripple"), said("no.such")),
+        (None, None, None)
+    );
 }
 
 #[test]
 fn bad_settings_are_told_with_what_was_written() {
     for (setting, problem) in [
-        ("ambient.high", "has no equals sign; write KEY=VALUE, for example ambient.high=\"43 degC\""),
-        ("ambient.hihg=43 degC", "is not a known key; did you mean \"ambient.high\"?"),
-        ("ambeint.high=43 degC", "is not a known key; did you mean \"ambient.high\"?"),
+        (
+            "ambient.high",
+            "has no equals sign; write KEY=VALUE, for example ambient.high=\"43 degC\"",
+        ),
+        (
+            "ambient.hihg=43 degC",
+            "is not a known key; did you mean \"ambient.high\"?",
+        ),
+        (
+            "ambeint.high=43 degC",
+            "is not a known key; did you mean \"ambient.high\"?",
+        ),
         ("bulids=3", "is not a known key; did you mean \"builds\"?"),
         ("ripple=6 mV", "is not a known key; did you mean \"rail.logic.ripple\"?"),
-        ("rail.logic.riple=6 mV", "is not a known key; did you mean \"rail.logic.ripple\"?"),
-        ("rail.logik.ripple=6 mV", "names no rail: \"logik\"; did you mean \"logic\"?"),
-        ("rail.zz.ripple=6 mV", "names no rail: \"zz\"; the rails are logic, logic.aux-2 = b"),
-        ("ambient.xyzzy=3", "is not a known key; known are ambient.low, ambient.high, ambient.inside_rise"),
-        ("xyzzy=3", "is not a known key; known are the keys of the supply file: builds, ambient.high, rail.NAME.ripple"),
-        ("ambient=3", "is a table; set one of ambient.low, ambient.high, ambient.inside_rise"),
+        (
+            "rail.logic.riple=6 mV",
+            "is not a known key; did you mean \"rail.logic.ripple\"?",
+        ),
+        (
+            "rail.logik.ripple=6 mV",
+            "names no rail: \"logik\"; did you mean \"logic\"?",
+        ),
+        (
+            "rail.zz.ripple=6 mV",
+            "names no rail: \"zz\"; the rails are logic, logic.aux-2 = b",
+        ),
+        (
+            "ambient.xyzzy=3",
+            "is not a known key; known are ambient.low, ambient.high, ambient.inside_rise",
+        ),
+        (
+            "xyzzy=3",
+            "is not a known key; known are the keys of the supply file: builds, ambient.high, rail.NAME.ripple",
+        ),
+        (
+            "ambient=3",
+            "is a table; set one of ambient.low, ambient.high, ambient.inside_rise",
+        ),
         ("ambient.high=43", "\"43\" has no unit; write \"43 degC\""),
-        ("ambient.high=43 W", "\"43 W\" is not a temperature; its unit is one of degC, \u{B0}C"),
+        (
+            "ambient.high=43 W",
+            "\"43 W\" is not a temperature; its unit is one of degC, \u{B0}C",
+        ),
         ("ambient.high=", "is not a number; a temperature: -60 to 150 degC"),
         ("builds=0", "\"0\" is out of range; a whole number from 1 to 1000000000"),
-        ("builds=many", "\"many\" is not a whole number; a whole number from 1 to 1000000000"),
-        ("caps.cost=1e9", "\"1e9\" is out of range; allowed: above 0 up to 1000000"),
-        ("rail.logic.isolated=yes", "\"yes\" is of another type; write true or false, without quotes"),
+        (
+            "builds=many",
+            "\"many\" is not a whole number; a whole number from 1 to 1000000000",
+        ),
+        (
+            "caps.cost=1e9",
+            "\"1e9\" is out of range; allowed: above 0 up to 1000000",
+        ),
+        (
+            "rail.logic.isolated=yes",
+            "\"yes\" is of another type; write true or false, without quotes",
+        ),
         (
             "rail.logic.paths=bridge",
             "\"bridge\" is not a list; a list of some of \"half-wave\", \"centre-tap\", \"bridge\", \"dual\"",
@@ -194,9 +247,15 @@ fn bad_settings_are_told_with_what_was_written() {
             "rail.logic.paths=[\"bridg\"]",
             "\"bridg\" is not a known word; did you mean \"bridge\"? allowed: half-wave, centre-tap, bridge, dual",
         ),
-        ("rail.logic.idle=2 A", "\"2 A\" is above current; at most the full-load current"),
+        (
+            "rail.logic.idle=2 A",
+            "\"2 A\" is above current; at most the full-load current",
+        ),
         ("mains.low=240 V", "\"240 V\" is above voltage; low <= voltage <= high"),
-        ("name=a\nbuilds=3", "\"a\nbuilds=3\" has a control character; write one line of text"),
+        (
+            "name=a\nbuilds=3",
+            "\"a\nbuilds=3\" has a control character; write one line of text",
+        ),
     ] {
         check(&[setting], &format!("--set {setting}: {problem}"));
     }
