@@ -393,3 +393,182 @@ fn an_interrupt_gives_the_best_so_far() {
     assert!(["best found", "open"].contains(&status), "{status}");
     assert!(document["proof"]["bound"].as_f64().unwrap() >= 0.0);
 }
+
+/// --set: as if it stood in the file, in every command that reads a supply and in what is saved.
+#[test]
+fn settings_take_the_place_of_keys() {
+    let folder = tempfile::tempdir().unwrap();
+    let path = folder.path().join("build.json").display().to_string();
+    let set = [
+        "--set",
+        "ambient.high=\"43 degC\"",
+        "--set",
+        "builds=500",
+        "--set",
+        "rail.logic.ripple=6 mV",
+    ];
+    let pick = [&["pick", SUPPLY, "--save", &path][..], &set].concat();
+    check(&pick, 0, "Tide gauge, 500 units", "");
+    let saved: serde_json::Value = serde_json::from_str(&fs::read_to_string(&path).unwrap()).unwrap();
+    assert_eq!(saved["supply"]["ambient"]["high"], "43 degC");
+    assert_eq!(saved["supply"]["builds"], 500);
+    assert_eq!(saved["supply"]["rail"][0]["ripple"], "6 mV");
+    check(&["audit", &path], 0, "passes: all ", "");
+    let rank = [&["rank", SUPPLY, "--top", "2"][..], &set].concat();
+    check(&rank, 0, "Tide gauge, 500 units", "");
+    // The same as in the file.
+    let edited = changed(folder.path(), "high = \"45 degC\"", "high = \"43 degC\"");
+    let here = run(&["pick", &edited, "--catalogue", "catalog", "--format", "csv"]).stdout;
+    let set = ["--set", "ambient.high=43 degC", "--format", "csv"];
+    assert_eq!(run(&[&["pick", SUPPLY][..], &set].concat()).stdout, here);
+    for (setting, problem) in [
+        ("ambient.hihg=43 degC", "did you mean \"ambient.high\"?"),
+        ("rail.logic.ripple=6", "\"6\" has no unit; write \"6 V\""),
+        ("rail.logik.ripple=6 mV", "did you mean \"logic\"?"),
+        ("builds", "has no equals sign"),
+    ] {
+        check(
+            &["pick", SUPPLY, "--set", setting],
+            2,
+            "",
+            &format!("--set {setting}: "),
+        );
+        check(&["rank", SUPPLY, "--set", setting], 2, "", problem);
+    }
+    let output = check(&["pick", SUPPLY, "--set", "builds=0", "--format", "json"], 2, "", "");
+    let document: serde_json::Value = serde_json::from_slice(&output.stderr).unwrap();
+    assert_eq!(document["errors"][0]["column"], "--set builds=0");
+    assert_eq!(document["errors"][0]["file"], "");
+}
+
+/// What would have to give: it does, and not one digit nearer.
+#[test]
+fn what_would_have_to_give() {
+    let hot = ["--set", "ambient.high=75 degC"];
+    let output = check(
+        &[&["pick", SUPPLY], &hot[..]].concat(),
+        1,
+        "It would pass with any one of these",
+        "",
+    );
+    let table = String::from_utf8(output.stdout).unwrap();
+    let output = check(&[&["rank", SUPPLY, "--format", "json"], &hot[..]].concat(), 1, "", "");
+    let document: serde_json::Value = serde_json::from_slice(&output.stdout).unwrap();
+    let relax = document["relax"].as_array().unwrap();
+    assert_eq!(relax[0]["requirement"], "ambient.high");
+    assert_eq!(relax[0]["from"], "75 degC");
+    let to = relax[0]["to"].as_str().unwrap();
+    assert!(table.contains(to), "{table}");
+    let number: f64 = to.strip_suffix(" degC").unwrap().parse().unwrap();
+    check(
+        &["pick", SUPPLY, "--set", &format!("ambient.high={to}")],
+        0,
+        "proved cheapest",
+        "",
+    );
+    let nearer = format!("ambient.high={:.1} degC", number + 0.1);
+    let would = format!("it would pass with ambient.high {:.1} degC -> {to}", number + 0.1);
+    check(
+        &["pick", SUPPLY, "--set", &nearer, "--format", "csv"],
+        1,
+        "slot,limit",
+        &would,
+    );
+}
+
+/// What requirements cost: in every form, and a build that carries it reads back.
+#[test]
+fn prices_of_requirements() {
+    let folder = tempfile::tempdir().unwrap();
+    let path = folder.path().join("build.json").display().to_string();
+    let output = check(
+        &["pick", SUPPLY, "--prices", "--save", &path],
+        0,
+        "What each requirement costs",
+        "",
+    );
+    let saved: serde_json::Value = serde_json::from_str(&fs::read_to_string(&path).unwrap()).unwrap();
+    let prices = saved["prices"].as_array().unwrap();
+    assert!(!prices.is_empty());
+    let text = String::from_utf8(output.stdout).unwrap();
+    for price in prices {
+        let [requirement, to] = ["requirement", "to"].map(|key| price[key].as_str().unwrap());
+        assert!(text.contains(requirement) && text.contains(to), "{price}");
+        if requirement.starts_with("stock.") {
+            continue;
+        }
+        let output = check(
+            &[
+                "pick",
+                SUPPLY,
+                "--set",
+                &format!("{requirement}={to}"),
+                "--format",
+                "json",
+            ],
+            0,
+            "",
+            "",
+        );
+        let better: serde_json::Value = serde_json::from_slice(&output.stdout).unwrap();
+        let saves = saved["cost_per_unit"].as_f64().unwrap() - better["cost_per_unit"].as_f64().unwrap();
+        assert!(
+            (saves - price["saves"].as_f64().unwrap()).abs() < 1e-9,
+            "{price}: {saves}"
+        );
+    }
+    check(&["audit", &path], 0, "passes: all ", "");
+    check(
+        &["pick", SUPPLY, "--prices", "--format", "csv"],
+        0,
+        "qty_for_run",
+        " saves 0.",
+    );
+    check(&["pick", SUPPLY, "--prices", "--by", "heat"], 0, "mW", "");
+}
+
+/// The roomiest build is no worse than the asked share, and says so.
+#[test]
+fn room_within_a_share() {
+    let folder = tempfile::tempdir().unwrap();
+    let path = folder.path().join("build.json").display().to_string();
+    // Without the transformers' core flux, which no choice changes, there is room to find.
+    let set = ["--set", "mains.high=250 V", "--room", "5%"];
+    let output = check(
+        &[&["pick", SUPPLY, "--save", &path, "--format", "json"], &set[..]].concat(),
+        0,
+        "",
+        "",
+    );
+    let document: serde_json::Value = serde_json::from_slice(&output.stdout).unwrap();
+    let number = |key: &str| document["room"][key].as_f64().unwrap();
+    assert_eq!(document["proof"]["status"], "proved");
+    assert_eq!(document["room"]["share"], 0.05);
+    let cost = document["cost_per_unit"].as_f64().unwrap();
+    assert!(cost > number("best") && cost <= number("best") * 1.05, "{cost}");
+    let margins = document["margins"].as_array().unwrap();
+    let tightness = |m: &serde_json::Value| m["margin"].as_f64().unwrap() / m["bound"].as_f64().unwrap().abs().max(1.0);
+    let least = margins.iter().map(tightness).fold(f64::INFINITY, f64::min);
+    assert!((least - number("tightness")).abs() < 1e-12);
+    check(&["audit", &path], 0, "passes: all ", "");
+    check(
+        &[&["pick", SUPPLY], &set[..]].concat(),
+        0,
+        "proved roomiest within 5 % of the cheapest: ",
+        "",
+    );
+    for (share, problem) in [
+        ("5", "has no unit"),
+        ("101%", "out of range"),
+        ("-1%", "out of range"),
+        ("x", "not a number"),
+    ] {
+        check(&["pick", SUPPLY, &format!("--room={share}")], 2, "", problem);
+    }
+    check(
+        &["pick", SUPPLY, "--room", "2%", "--prices"],
+        2,
+        "",
+        "cannot be used with",
+    );
+}

@@ -70,9 +70,12 @@ pub(super) fn run(report: &Report) -> String {
 /// What the roomiest build costs more than the best one, and how much room it has.
 fn room(report: &Report, superlative: &str, value: Option<f64>, best: f64, amount: impl Fn(f64) -> String) -> String {
     let mut out = String::new();
-    if let Some(value) = value {
-        let (more, best) = (amount(value - best), amount(best));
-        out.push_str(&format!("\n{more} more than the {superlative} with {best}"));
+    match value {
+        Some(value) if value > best => {
+            let (more, best) = (amount(value - best), amount(best));
+            out.push_str(&format!("\n{more} more than the {superlative} with {best}"));
+        }
+        _ => out.push_str(&format!("\nas good as the {superlative}")),
     }
     if let Some(tightest) = report.audit.tightest() {
         let (of, limit) = (printable(&tightest.of), tightest.check.limit.word());

@@ -31,6 +31,7 @@ type Row = (&'static str, Way, Shape);
 
 /// Every requirement that may give, but for stock. The reader of the supply says how far: to the end of the key's
 /// range, and mains.low to the nominal voltage, ambient.high to ambient.low, a rail's current to what it takes idle.
+/// Cans alone end before: see [`MOST_CANS`].
 const ROWS: &[Row] = &[
     ("ambient.high", Down, Shape::Wavy),
     ("mains.low", Up, Shape::Straight),
@@ -51,6 +52,10 @@ const ROWS: &[Row] = &[
     ("rail.*.accuracy", Up, Shape::Straight),
     ("rail.*.dip", Down, Shape::Straight),
 ];
+
+/// No more than so many times the cans that were asked for: nobody puts more in parallel for want of a better one, and
+/// each one more is one more bank of every can to look at.
+const MOST_CANS: i64 = 4;
 
 /// What a lever moves.
 #[derive(Debug, Clone, PartialEq, Eq)]
@@ -129,6 +134,10 @@ impl Lever {
             }
         }
         lever.last = known;
+        #[allow(clippy::cast_possible_truncation)] // a count
+        if shape == Shape::Slow {
+            lever.last = known.min((MOST_CANS - 1) * value as i64);
+        }
         (lever.last > 0).then_some(lever)
     }
 

@@ -42,8 +42,9 @@ pub(super) struct Passing {
 }
 
 impl Wish<'_, '_> {
-    /// The nearest place of a lever, from one that holds; none before `fails` and there does. The places between are
-    /// halved; but a build mostly holds nearer than where it was found, so the place just before it is asked in turn.
+    /// The nearest place of a lever, from one that holds; none before `fails` and there does. The place just before is
+    /// asked and the places between are halved by turns: few builds come into question, and each mostly holds nearer
+    /// than where it was found.
     pub(super) fn nearest(&self, lever: &Lever, from: Passing, fails: i64) -> Result<Answer<Solved>, Disagreement> {
         let (mut passing, mut fails) = (from, fails);
         let mut beside = true;
@@ -55,7 +56,7 @@ impl Wish<'_, '_> {
             };
             match self.probe(lever, place, fails)? {
                 Holds(nearer) => (passing, beside) = (nearer, !beside),
-                Fails => (fails, beside) = (place, false),
+                Fails => (fails, beside) = (place, true),
                 Open => return Ok(Open),
             }
         }

@@ -37,7 +37,12 @@ def main():
             for supply in sorted(pathlib.Path("examples").glob("*/supply.toml"))
             for more in ([], ["--by", "heat"])
         ]
+        gauge = "examples/tide-gauge/supply.toml"
         calls += [
+            (["pick", gauge, "--prices"], 0, "binrail.build/1", "stdout"),
+            (["pick", gauge, "--room", "5%", "--by", "heat"], 0, "binrail.build/1", "stdout"),
+            (["pick", gauge, "--set", "caps.cost=5"], 1, "binrail.none/1", "stdout"),
+            (["pick", gauge, "--set", "builds=0"], 2, "binrail.error/1", "stderr"),
             (["pick", "examples/tide-gauge/supply.toml", "--save", saved], 0, "binrail.build/1", "stdout"),
             (["audit", saved], 0, "binrail.audit/1", "stdout"),
             (["rank", "examples/tide-gauge/supply.toml", "--top", "5"], 0, "binrail.rank/1", "stdout"),
