@@ -7,7 +7,7 @@ use super::lists::Lists;
 use super::view::Ready;
 use crate::audit::{Site, compared, transformer, whole};
 use crate::catalogue::Part;
-use crate::screen::{Counts, Feed};
+use crate::screen::{Counts, Feed, Weights, heat_floor};
 use crate::supply::Path;
 use crate::units::Money;
 
@@ -375,10 +375,10 @@ impl<'f, 'w, 's, 'a, 'c> Combine<'f, 'w, 's, 'a, 'c> {
     }
 }
 
-/// Score of a least cost and a least heat.
-#[allow(clippy::cast_precision_loss)]
-fn score(weights: crate::screen::Weights, cost: i64, heat_w: f64) -> f64 {
-    weights.cost * cost as f64 + weights.heat * (heat_w * 1e6 - 1e-3)
+/// Score of a least cost and a least heat. In whole microwatts: a limit is the score of a heat as it is compared, which
+/// may lie half a microwatt below the true one, and that is much where heat weighs much.
+fn score(weights: Weights, cost: i64, heat_w: f64) -> f64 {
+    weights.score(cost, heat_floor(heat_w))
 }
 
 /// Lower bound of a heat as it is compared, whatever the order in which it is added up.

@@ -23,6 +23,8 @@ const FIRST_STEP: f64 = 64.0;
 const SETTLE_STEP: f64 = 256.0;
 /// Columns beyond which the solver's memory grows past reason.
 const MOST_SOLVER_COLUMNS: usize = 5_000;
+/// Scores above this are not tightened, which adds them up in whole numbers: the entries of a frame stay below 2^63.
+const MOST_WHOLE_SCORE: f64 = 1e17;
 /// Longest time for one solver call.
 const SOLVER_SECONDS: f64 = 30.0;
 
@@ -300,7 +302,7 @@ impl<'g, 'c> Search<'g, 'c> {
         let weights = self.lists.weights;
         #[allow(clippy::float_cmp)] // set so, not computed
         let by_cost = weights.cost == 1.0;
-        if !by_cost {
+        if !by_cost || most > MOST_WHOLE_SCORE {
             return;
         }
         let kept: Vec<Vec<(usize, i64)>> = (lists.iter())

@@ -4,7 +4,7 @@
 use std::collections::BTreeSet;
 
 use binrail::build::{distance, places};
-use binrail::catalogue::{Catalogue, PartId, Polarity};
+use binrail::catalogue::{Catalogue, PartId, Polarity, Slot};
 use binrail::optimise::{Near, Question};
 use binrail::screen::Objective;
 use binrail::supply::Supply;
@@ -12,7 +12,7 @@ use serde_json::json;
 
 use crate::brute_force::{Brute, Judged, Wish, one_for_each_bill};
 use crate::common::Random;
-use crate::oracle_run::{OBJECTIVES, Tally, front, hold, keys_of, over, over_kind, question, solve};
+use crate::oracle_run::{OBJECTIVES, Tally, front, hold, keys, keys_of, over, over_kind, question, solve};
 use crate::own_rules::apart;
 use crate::small_case::{Case, Kind};
 
@@ -110,6 +110,44 @@ fn the_front_is_that_of_brute_force() {
     });
     println!("{tally:#?}");
     enough(&tally, "several", 20);
+}
+
+/// Transformers that differ by a microwatt of iron: much money for each, so that what rounding a heat hides weighs much.
+const A_MICROWATT_APART: &str = r#"
+seed 0
+{"mains": {"voltage": "230 V", "tolerance": "10 %", "frequency": "50 Hz"}, "ambient": {"low": "0 degC", "high": "40 degC"}, "caps": {"cans": 1}, "ageing": {"life": "2000 h"}, "rail": [{"name": "5 V", "voltage": "5 V", "current": "0.8 A"}]}
+transformer T1: price=2; primary_v=230; va=30; secondary_v=10; regulation_pct=10; core_loss_w=4.000002
+transformer T2: price=10.9; primary_v=230; va=30; secondary_v=10; regulation_pct=10; core_loss_w=4.000001
+transformer T3: price=11; primary_v=230; va=30; secondary_v=10; regulation_pct=10; core_loss_w=4.000000
+rectifier B: price=0.4; kind=bridge; vrrm_v=200; io_a=4; ifsm_a=100; threshold_v=0.7; slope_mohm=30; rth_ja_k_w=20; tj_max_c=150
+reservoir C: price=0.4; c_uf=4700; v_rated_v=25; esr_mohm=50; ripple_a=3; t_max_c=105; life_h=5000
+pass U: price=0.5; kind=fixed; vout_v=5; tol_pct=4; dropout_v=2; vin_max_v=35; iout_max_a=1; ground_ma=5; rth_jc_k_w=3; rth_ja_k_w=60; tj_max_c=150; case=TO-220
+sink S: price=0.5; cases=TO-220 GBU; rth_sa_k_w=8
+"#;
+
+/// Steep as the curve may be, no build of it is lost; nor does adding up fail where a unit costs as much as a house.
+#[test]
+fn steep_fronts_are_whole() {
+    for price in ["10.9", "990000"] {
+        for hundredths in (0..100).step_by(8) {
+            let mut case = Case::read(A_MICROWATT_APART);
+            for row in case.rows.iter_mut().filter(|row| row.slot == Slot::Transformer) {
+                let core = format!("{}{hundredths:02}", row.cell("core_loss_w").unwrap());
+                row.set("core_loss_w", core);
+                if row.name == "T2" {
+                    row.set("price", price);
+                } else if row.name == "T3" {
+                    row.set("price", if price == "10.9" { "11" } else { "1000000" });
+                }
+            }
+            let (catalogue, supply) = (case.catalogue(), case.supply());
+            let brute = Brute::new(&supply, &catalogue);
+            let wanted = brute.front(&catalogue, &Wish::default());
+            let asked = question(&supply, &catalogue, Objective::Cost, 1);
+            let outcome = binrail::optimise::front(&asked).unwrap_or_else(|bug| panic!("{bug:?}\n{case}"));
+            assert_eq!(keys(&outcome), keys_of(&wanted), "{case}");
+        }
+    }
 }
 
 /// share = "never" gives a build of the shared problem, so it never costs less, nor runs cooler.
