@@ -276,12 +276,15 @@ impl<'a, 'c> Lists<'a, 'c> {
     }
 }
 
+/// Fewer items are not worth the starting of threads.
+const WORTH_THREADS: usize = 4;
+
 /// Works on every item, on as many threads as the machine has; the counts add up to the same whatever their number.
 fn on_threads<T: Send>(items: Vec<T>, counts: &mut Counts, work: impl Fn(T, &mut Counts) + Sync) {
     let threads = std::thread::available_parallelism()
         .map_or(1, usize::from)
         .min(items.len());
-    if threads < 2 {
+    if threads < 2 || items.len() < WORTH_THREADS {
         items.into_iter().for_each(|item| work(item, counts));
         return;
     }
