@@ -19,10 +19,9 @@ use crate::screen::{Counts, Group, Must, Objective, Plan, Weights, plans};
 
 /// T starts at the least that any build can have and first rises by this share of it, then by twice as much each time.
 const FIRST_STEP: f64 = 64.0;
-/// While the least is not settled, plans within this share above it are looked into together; the step grows, so that
-/// a least far below the first feeds is left behind soon.
+/// While the least is not settled, plans within this share above it are looked into together. A longer step
+/// solves much more than it saves in rounds.
 const SETTLE_STEP: f64 = 256.0;
-const SETTLE_GROWTH: f64 = 1.25;
 /// Columns beyond which the solver's memory grows past reason.
 const MOST_SOLVER_COLUMNS: usize = 5_000;
 /// Scores above this are not tightened, which adds them up in whole numbers: the entries of a frame stay below 2^63.
@@ -110,7 +109,6 @@ impl<'g, 'c> Search<'g, 'c> {
     /// Looks into plans until the first feeds of a cheapest cover are out; returns that cover, empty when there is none
     /// or the search was stopped.
     pub(super) fn settle(&mut self, counts: &mut Counts) -> Vec<usize> {
-        let mut step = (self.lists.least().last().copied().unwrap_or(0.0) / SETTLE_STEP).max(1.0);
         loop {
             self.least = self.lists.least();
             let base = self.base();
@@ -122,8 +120,7 @@ impl<'g, 'c> Search<'g, 'c> {
             if cover.iter().all(settled) {
                 return cover;
             }
-            step *= SETTLE_GROWTH;
-            let reach = base + step;
+            let reach = base + (base / SETTLE_STEP).max(1.0);
             for place in 0..self.lists.sources.len() {
                 let source = &self.lists.sources[place];
                 let beside = source.floor() + self.beside(source.plan.mask);
