@@ -36,9 +36,9 @@ use binrail::supply::Supply;
 
 use brute_force::{Brute, Judged, Wish};
 use common::Random;
-use oracle_run::{OBJECTIVES, Tally, over, question};
+use oracle_run::{OBJECTIVES, Tally, over_kind, question};
 use own_rules::{Bill, apart, price};
-use small_case::Case;
+use small_case::{Case, Kind};
 
 /// Cost, heat, text.
 type Key = (i64, i64, String);
@@ -63,11 +63,19 @@ fn enough(tally: &Tally, what: &str, least: usize) {
     );
 }
 
+/// Works through cases of one, two and three rails, some about dual pairs, floating rails and named sections.
+fn everywhere(work: impl Fn(&Case) + Sync) {
+    over_kind(Kind::Any, [20, 20, 8], &work);
+    over_kind(Kind::Dual, [0, 6, 4], &work);
+    over_kind(Kind::Floating, [0, 4, 2], &work);
+    over_kind(Kind::Pinned, [0, 4, 2], &work);
+}
+
 /// For every part of every slot the best build around it, in order, and nothing where brute force has nothing.
 #[test]
 fn the_best_build_around_each_part_is_that_of_brute_force() {
     let tally = Tally::default();
-    over([20, 20, 8], |case| {
+    everywhere(|case| {
         let (catalogue, supply) = (case.catalogue(), case.supply());
         let brute = Brute::new(&supply, &catalogue);
         let mut random = Random::new(case.seed);
@@ -142,7 +150,7 @@ fn check_swap(case: &Case, what: &str, got: &Swap, wanted: Option<(usize, &Judge
 #[test]
 fn the_nearest_build_without_a_part_is_that_of_brute_force() {
     let tally = Tally::default();
-    over([20, 20, 8], |case| {
+    everywhere(|case| {
         let (catalogue, supply) = (case.catalogue(), case.supply());
         let brute = Brute::new(&supply, &catalogue);
         let mut random = Random::new(case.seed);
@@ -217,7 +225,7 @@ fn the_nearest_build_without_a_part_is_that_of_brute_force() {
 #[test]
 fn what_is_lost_goes_and_the_rest_stays_where_it_can() {
     let tally = Tally::default();
-    over([20, 20, 8], |case| {
+    everywhere(|case| {
         let (then, supply) = (case.catalogue(), case.supply());
         let mut random = Random::new(case.seed);
         let before = Brute::new(&supply, &then);
@@ -303,7 +311,7 @@ fn what_is_lost_goes_and_the_rest_stays_where_it_can() {
 #[test]
 fn why_a_part_stays_out_is_what_brute_force_says() {
     let tally = Tally::default();
-    over([20, 20, 8], |case| {
+    everywhere(|case| {
         let (catalogue, supply) = (case.catalogue(), case.supply());
         let brute = Brute::new(&supply, &catalogue);
         let objective = OBJECTIVES[case.seed as usize % 2];
@@ -407,7 +415,7 @@ fn why_a_part_stays_out_is_what_brute_force_says() {
 #[test]
 fn the_shelf_is_what_brute_force_says() {
     let tally = Tally::default();
-    over([20, 20, 8], |case| {
+    everywhere(|case| {
         let (catalogue, supply) = (case.catalogue(), case.supply());
         let brute = Brute::new(&supply, &catalogue);
         let mut random = Random::new(case.seed);

@@ -29,10 +29,10 @@ use output::Answer;
   binrail pick supply.toml                      choose the cheapest build and prove it
   binrail pick supply.toml --by heat --save a.json
   binrail rank supply.toml --top 10             the ten best builds
-  binrail rank supply.toml --each pass          second sources: the best build around every pass device
+  binrail rank supply.toml --each pass          second sources: a build around every one
   binrail swap a.json --without Z1-0412         redo a saved build when parts are gone
   binrail front supply.toml                     what each watt less costs
-  binrail why supply.toml Z1-0412               what keeps a part out, or what forcing it in would cost
+  binrail why supply.toml Z1-0412               what keeps a part out, or what it would cost
   binrail audit a.json                          every limit of a saved or hand-written build
   binrail vet stock/                            check a catalogue
   binrail wave --source-v 12 --hz 50 --winding-ohm 0.5 --path bridge --threshold-v 0.7 --slope-ohm 0.02 \\
@@ -103,7 +103,7 @@ enum Command {
     Rank(find::Rank),
     /// Redo a saved build when parts are gone: the fewest changes, then the best
     #[command(after_help = "Examples:
-  binrail swap build.json                       whatever is gone, withdrawn or short of stock must go
+  binrail swap build.json                       what is gone, withdrawn or short must go
   binrail swap build.json --without Z1-0412 --save new.json
   binrail swap build.json --without Z1-0412 --free
   binrail swap build.json --each                what the loss of each part would cost")]

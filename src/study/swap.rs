@@ -63,13 +63,16 @@ impl<'a> Old<'a> {
         }
     }
 
-    /// What must go because it is gone, withdrawn (unless named) or short of stock, in the order of the parts.
+    /// What must go because it is gone, or (unless named) withdrawn or short of stock, in the order of the parts.
     #[must_use]
     pub fn losses(&self, supply: &Supply, named: &BTreeSet<PartId>) -> Vec<(&'a Part, Loss)> {
         let lines = self.build.lines(supply);
         let loss = |line: &crate::build::Line<'a>, row: Option<&Part>| {
             let Some(row) = row else { return Some(Loss::Gone) };
-            if row.status == Status::Withdrawn && !named.contains(&row.id) {
+            if named.contains(&row.id) {
+                return None;
+            }
+            if row.status == Status::Withdrawn {
                 return Some(Loss::Withdrawn);
             }
             let needed = line.qty * supply.builds;
