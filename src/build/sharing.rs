@@ -13,8 +13,8 @@ pub fn may_share(supply: &Supply, rails: &[usize]) -> bool {
     let left_out = |(place, rail): (usize, &crate::supply::Rail)| {
         !rails.contains(&place) && rail.section.is_some() && rail.section.as_ref() == names().next()
     };
-    (alone || !supply.share_never)
-        && (alone || !own().any(|rail| rail.isolated))
+    let alone_by_wish = supply.share_never || own().any(|rail| rail.isolated);
+    (alone || !alone_by_wish)
         && (own().all(|rail| rail.voltage_v > 0.0) || own().all(|rail| rail.voltage_v < 0.0))
         && !named_apart
         && !supply.rails.iter().enumerate().any(left_out)

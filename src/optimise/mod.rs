@@ -164,9 +164,8 @@ fn search<'c>(
     best: &mut Best<'c>,
     counts: &mut Counts,
 ) -> Option<i64> {
-    let Some(charge) = cap::charge(ground, question, best, counts) else {
-        return None;
-    };
+    // No charge: nothing can meet the cap.
+    let charge = cap::charge(ground, question, best, counts)?;
     best.set_charge(charge.whole);
     let end = Search::start(ground, question, charge.weights, question.top == 1, counts).run(best, counts);
     #[allow(clippy::cast_possible_truncation)] // saturates

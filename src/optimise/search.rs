@@ -221,6 +221,7 @@ impl<'g, 'c> Search<'g, 'c> {
                 }
             }
             passed = reach;
+            self.tell(passed, work.wanted.limit(), work.counts);
             if reach >= work.wanted.limit() {
                 return End::Complete;
             }
@@ -289,6 +290,20 @@ impl<'g, 'c> Search<'g, 'c> {
             Said::Least(value) => go(u64::MAX, reach.min(value), work),
             Said::NothingWithin => Run::Whole,
             Said::Nothing => go(u64::MAX, reach, work),
+        }
+    }
+
+    /// Tells whoever watches how far the search is, where its score is the objective.
+    #[allow(clippy::cast_possible_truncation)] // saturates
+    fn tell(&self, passed: f64, limit: f64, counts: &Counts) {
+        let stop = &self.question.stop;
+        stop.looked_at(counts.nodes);
+        if self.may_ask() {
+            stop.bounded(passed as i64);
+            // Without a build the limit is what an i64 can hold at most.
+            if limit < 9e18 {
+                stop.found(limit as i64);
+            }
         }
     }
 
