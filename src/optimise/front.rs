@@ -15,6 +15,10 @@ use crate::audit::Site;
 use crate::build::Build;
 use crate::screen::{Counts, Objective, Weights};
 
+/// A search by new weights costs more than the corners that it spares where the lowest build lies less than this share of
+/// the score below the line.
+const WORTH_PARTING: f64 = 200.0;
+
 /// The builds of the curve so far, by cost; heats fall.
 #[derive(Default)]
 struct Curve<'c>(BTreeMap<i64, Found<'c>>);
@@ -213,7 +217,7 @@ fn on_ground<'c>(ground: &Ground<'_, 'c>, question: &Question<'c>, curve: &mut C
         if let End::Stopped { .. } = search.run(&mut wanted, counts) {
             return false;
         }
-        if wanted.least < line - slack(line) {
+        if wanted.least < line - line / WORTH_PARTING {
             // Of the builds on the lowest line any parts the rest.
             let lowest = |f: &&Found| weights.score(f.key.cost, f.key.heat) <= wanted.least + slack(line);
             let between = |f: &&Found| f.key.cost > left.0 && f.key.cost < right.0;

@@ -69,9 +69,9 @@ pub(super) struct View {
     pub(super) seen: usize,
     /// Least heat by lines: of equal lines only the coolest can matter, where nothing else tells them apart.
     pub(super) coolest: Option<BTreeMap<Bill, f64>>,
-    /// Of those that hold, whether they surely hold beside the plan's other sections; kept where only the best build is
+    /// Of those that hold, the heat, and whether they surely hold beside the plan's other sections; kept where only the best build is
     /// wanted.
-    pub(super) robust: Option<Vec<bool>>,
+    pub(super) robust: Option<Vec<(f64, bool)>>,
     /// Places that may differ from the build to stay close to.
     pub(super) most_changes: usize,
     /// Least score of those that hold, or of those that were not looked at.
@@ -111,9 +111,14 @@ impl View {
             group: &groups[outlet.group()],
             outlet,
         };
-        let held = self.held.iter().zip(robust);
-        held.into_iter()
-            .any(|(&place, &robust)| market.betters(&flow.ready[place], robust, ready))
+        let cooler = self
+            .held
+            .iter()
+            .zip(robust)
+            .filter(|(_, (heat_w, _))| *heat_w <= ready.heat_w);
+        cooler
+            .into_iter()
+            .any(|(&place, &(_, robust))| market.betters(&flow.ready[place], robust, ready))
     }
 
     /// Looks at what has come; only up to the first that holds if `only_first`.
@@ -134,7 +139,9 @@ impl View {
                 });
                 if may && self.is_coolest(ready) {
                     self.held.push(self.seen);
-                    self.robust.iter_mut().for_each(|robust| robust.push(surely));
+                    self.robust
+                        .iter_mut()
+                        .for_each(|robust| robust.push((ready.heat_w, surely)));
                 }
             }
             self.seen += 1;
