@@ -122,7 +122,7 @@ fn far_ends(case: &Case) -> Vec<(String, Vec<String>)> {
     all.push(("builds".into(), runs));
     for rail in &supply.rails {
         let key = |key: &str| format!("rail.{}.{key}", rail.name);
-        let amps = [0.9, 0.5, 0.001].map(|share| format!("{:.6} A", rail.current_a * share));
+        let amps = [0.9, 0.5, 0.00101].map(|share| format!("{:.6} A", rail.current_a * share));
         all.push((key("current"), amps.to_vec()));
         all.extend(rail.ripple_v.map(|_| (key("ripple"), one("1000 V"))));
         all.extend(rail.accuracy.map(|_| (key("accuracy"), one("100 %"))));

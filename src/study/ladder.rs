@@ -12,13 +12,13 @@ pub(super) struct Ladder {
 /// Highest and, negated, lowest rung that is ever asked for: more than twenty powers of ten.
 const END: i64 = 20_000;
 /// Powers of ten between the last digit of a value's own three and the finest step.
-const FINER: i32 = 2;
+const FINER: i32 = 5;
 
 impl Ladder {
     /// Of whole numbers.
     pub(super) const WHOLE: Ladder = Ladder { fine: 0 };
 
-    /// With steps two powers of ten finer than the third digit of `value`.
+    /// With steps some powers of ten finer than the third digit of `value`.
     pub(super) fn around(value: f64) -> Ladder {
         let written = format!("{:e}", value.abs());
         let power = written.split_once('e').and_then(|(_, power)| power.parse::<i32>().ok());
@@ -122,7 +122,7 @@ mod tests {
             (-7.0, false, "-7.01"),
             (0.25, false, "0.249"),
             (20_000.0, false, "19900"),
-            (0.0, false, "-0.0001"),
+            (0.0, false, "-0.0000001"),
             (999.0, true, "1000"),
         ] {
             assert_eq!(steps(value, up), text);

@@ -31,7 +31,7 @@ type Row = (&'static str, Way, Shape);
 
 /// Every requirement that may give, but for stock. The reader of the supply says how far: to the end of the key's
 /// range, and mains.low to the nominal voltage, ambient.high to ambient.low, a rail's current to what it takes idle.
-/// Cans alone end before: see [`MOST_CANS`].
+/// Cans and currents end before: see [`MOST_CANS`], [`LEAST_CURRENT`].
 const ROWS: &[Row] = &[
     ("ambient.high", Down, Shape::Wavy),
     ("mains.low", Up, Shape::Straight),
@@ -55,7 +55,9 @@ const ROWS: &[Row] = &[
 
 /// No more than so many times the cans that were asked for: nobody puts more in parallel for want of a better one, and
 /// each one more is one more bank of every can to look at.
-const MOST_CANS: i64 = 4;
+const MOST_CANS: f64 = 4.0;
+/// No less than this share of a rail's current: a rail that takes less is another rail.
+const LEAST_CURRENT: f64 = 1e-3;
 
 /// What a lever moves.
 #[derive(Debug, Clone, PartialEq, Eq)]
@@ -121,7 +123,15 @@ impl Lever {
             from,
         };
         // The farthest place that the reader takes: out in doubling steps, then between the last two.
-        let taken = |place: i64| lever.supply(supply, place).is_some();
+        let taken = |place: i64| {
+            let reached = lever.ladder.value(lever.rung(place)) / value;
+            let sensible = match shape {
+                Shape::Slow => reached <= MOST_CANS,
+                Shape::Wavy if lever.requirement.ends_with(".current") => reached >= LEAST_CURRENT,
+                _ => true,
+            };
+            sensible && lever.supply(supply, place).is_some()
+        };
         let (mut known, mut step) = (0, 1);
         while taken(known + step) {
             known += step;
@@ -134,10 +144,6 @@ impl Lever {
             }
         }
         lever.last = known;
-        #[allow(clippy::cast_possible_truncation)] // a count
-        if shape == Shape::Slow {
-            lever.last = known.min((MOST_CANS - 1) * value as i64);
-        }
         (lever.last > 0).then_some(lever)
     }
 

@@ -30,7 +30,7 @@ impl Wish<'_, '_> {
         let of = |shape: Shape| -> Vec<usize> { (0..levers.len()).filter(|&k| levers[k].shape == shape).collect() };
         let mut starts = Starts::new();
         let mut complete = self.together(&levers, of(Shape::Straight), &mut starts)?;
-        complete &= self.waves(&levers, &of(Shape::Wavy), &mut starts)?;
+        complete &= self.waves(&levers, of(Shape::Wavy), &mut starts)?;
         for k in of(Shape::Slow) {
             complete &= self.together(&levers, vec![k], &mut starts)?;
         }
@@ -127,30 +127,22 @@ impl Wish<'_, '_> {
         })
     }
 
-    /// Levers whose far end may ask for more of something else: each there, and those that fail there together at
-    /// places on the way, which grow fourfold.
-    fn waves(&self, levers: &[Lever], group: &[usize], starts: &mut Starts) -> Result<bool, Disagreement> {
+    /// Levers whose far end may ask for more of something else, and is far from what is mostly enough: together at places
+    /// that grow fourfold, the far end last, and each alone where together they do.
+    fn waves(&self, levers: &[Lever], mut left: Vec<usize>, starts: &mut Starts) -> Result<bool, Disagreement> {
         let mut complete = true;
-        let mut left = Vec::new();
-        for &k in group {
-            match self.with_all(levers, &[(k, levers[k].last)])? {
-                Holds(alone) => starts.extend(alone),
-                Fails => left.push(k),
-                Open => complete = false,
-            }
-        }
         let mut place = 1;
-        loop {
-            left.retain(|&k| place < levers[k].last && !starts.contains_key(&k));
-            if left.is_empty() {
-                return Ok(complete);
-            }
-            let places: Vec<(usize, i64)> = left.iter().map(|&k| (k, place)).collect();
+        while !left.is_empty() {
+            let places: Vec<(usize, i64)> = left.iter().map(|&k| (k, place.min(levers[k].last))).collect();
             match self.with_all(levers, &places)? {
                 Fails => {}
                 Open => complete = false,
-                Holds(_) if places.len() > 1 => {
-                    for &k in &left {
+                Holds(alone) => {
+                    starts.extend(alone);
+                    for &(k, place) in places.iter().filter(|_| places.len() > 1) {
+                        if starts.contains_key(&k) {
+                            continue;
+                        }
                         match self.with_all(levers, &[(k, place)])? {
                             Holds(alone) => starts.extend(alone),
                             Fails => {}
@@ -158,10 +150,11 @@ impl Wish<'_, '_> {
                         }
                     }
                 }
-                Holds(alone) => starts.extend(alone),
             }
+            left.retain(|&k| place < levers[k].last && !starts.contains_key(&k));
             place *= 4;
         }
+        Ok(complete)
     }
 
     /// The largest run that is small enough. Between two sizes at which some stock suffices for one piece more in each
