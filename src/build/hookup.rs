@@ -130,8 +130,12 @@ impl Hookup {
 #[must_use]
 pub fn hookups(transformer: &Transformer) -> Vec<Hookup> {
     let mut found = Vec::new();
-    for group in equal_groups(transformer) {
-        let tapped = transformer.secondaries[group[0] - 1].tapped.is_some();
+    for Windings { mut places, tapped } in windings(transformer) {
+        // A tapped winding stands by itself, and of equal ones the first stands for all.
+        if tapped {
+            places.truncate(2);
+        }
+        let group = places;
         found.push(Hookup::new(HookupKind::Single, &group[..1], transformer));
         for count in 2..=group.len() {
             found.push(Hookup::new(HookupKind::Series, &group[..count], transformer));
@@ -146,29 +150,6 @@ pub fn hookups(transformer: &Transformer) -> Vec<Hookup> {
         }
     }
     found
-}
-
-/// Places of equal secondaries; a tapped winding is a group of its own, and of equal ones the first stands for all.
-fn equal_groups(transformer: &Transformer) -> Vec<Vec<usize>> {
-    let mut groups: Vec<Vec<usize>> = Vec::new();
-    for (index, secondary) in transformer.secondaries.iter().enumerate() {
-        let alike = groups.iter_mut().find(|group| {
-            let first = &transformer.secondaries[group[0] - 1];
-            #[allow(clippy::float_cmp)] // equal as written
-            let equal = first.volts_v == secondary.volts_v && first.amps_a == secondary.amps_a;
-            equal && first.tapped.is_some() == secondary.tapped.is_some()
-        });
-        match alike {
-            Some(group) => {
-                let first = &transformer.secondaries[group[0] - 1];
-                if first.tapped == secondary.tapped {
-                    group.push(index + 1);
-                }
-            }
-            None => groups.push(vec![index + 1]),
-        }
-    }
-    groups
 }
 
 /// Equal windings of a transformer, whose places sections take one after the other.
